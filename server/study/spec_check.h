@@ -38,8 +38,8 @@ struct CheckResult {
   // parallel, look_ahead. 0 stays in population, tolerance and share: the method's own default. Empty when there are
   // problems.
   v1::StudySpec effective;
-  std::vector<Cell> cells;              // one where the spec has no conditions; empty when there are problems
-  std::int64_t runs_per_candidate = 0;  // cells x replicates; 0 when there are problems
+  std::vector<Cell> cells;     // one where the spec has no conditions; empty when there are problems
+  int runs_per_candidate = 0;  // cells x replicates; 0 when there are problems
 };
 
 // Never fails: what is wrong is the answer. Units are compared where both sides declare one; a unit on one side alone
