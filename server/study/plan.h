@@ -19,11 +19,11 @@
 
 namespace drover::study {
 
-// How one run of a candidate stands at its end. Borrowed for the call.
+// How one run of a candidate settled.
 struct RunResult {
-  int condition = 0;                          // index of the cell
-  int replicate = 0;                          // 0-based
-  const v1::AttemptReport* report = nullptr;  // that settled it; null: the run was withdrawn
+  int condition = 0;         // index of the cell
+  int replicate = 0;         // 0-based
+  v1::AttemptReport report;  // that settled it: EVALUATED, FAILED or BOUNDED
 };
 
 // What an effective spec (check_spec) means, once and for all runs of the study.
@@ -38,7 +38,7 @@ class StudyPlan {
   // one check_spec without problems. The arguments are copied.
   static absl::StatusOr<std::unique_ptr<StudyPlan>> make(const v1::StudySpec& effective,
                                                          std::span<const v1::CodeDefinition> codes,
-                                                         std::span<const Cell> cells);
+                                                         std::span<const CellValues> cells);
   StudyPlan(const StudyPlan&) = delete;
   StudyPlan& operator=(const StudyPlan&) = delete;
   ~StudyPlan();
@@ -47,7 +47,7 @@ class StudyPlan {
   const v1::CodeDefinition& code() const;
   const search::Space& space() const;
   const search::Settings& settings() const;
-  std::span<const Cell> cells() const;
+  std::span<const CellValues> cells() const;
   int replicates() const;
   int runs_per_candidate() const;  // cells x replicates
 
@@ -61,7 +61,9 @@ class StudyPlan {
   // What the code is given under a cell: variables and conditions in the code's own units, sorted by name.
   std::vector<v1::NamedValue> inputs(std::span<const double> values, int cell) const;
 
-  // What a candidate is worth. `runs` has each of the candidate's runs (cells x replicates) once, in any order.
+  // What a candidate is worth. `runs` are its settled runs, in any order; a run that is missing, or whose report
+  // settles nothing, was withdrawn. The first of two reports on one run counts; one on no run of the study is passed
+  // over.
   //
   // Each run: outputs as reported, in the code's units; derived numbers from variables and conditions (study's units),
   // outputs (code's units) and earlier derived numbers; then objectives and constraints take their unit where they
@@ -78,8 +80,7 @@ class StudyPlan {
   // (river_flow = 0.35 m3/s): ...' (1-based, for people). Else WITHDRAWN when a run was withdrawn. Objectives are
   // minimised (negated where the sense is MAXIMISE).
   //
-  // INVALID_ARGUMENT when `runs` is not exactly the candidate's runs or one has an ending that settles nothing.
-  absl::StatusOr<CandidateScore> score(std::span<const double> values, std::span<const RunResult> runs) const;
+  CandidateScore score(std::span<const double> values, std::span<const RunResult> runs) const;
 
   // What the method learns. INVALID_ARGUMENT when the score's bytes are no score of this study.
   absl::StatusOr<search::Outcome> to_outcome(const search::Ask& ask, const CandidateScore& score) const;
@@ -92,22 +93,22 @@ class StudyPlan {
   // replicates that were evaluated; numbers that no replicate gave are left out. `runs` of other cells are passed over.
   v1::CellResult cell_result(std::span<const double> values, int cell, std::span<const RunResult> runs) const;
 
+  // Whether `a` comes before `b` by the feasibility rules of Deb (2000): feasible before infeasible before failed
+  // before withdrawn; of two feasible ones the smaller (first) objective, of two infeasible ones the smaller violation.
+  // Strict: a tie is false, so whoever came earlier stays.
+  static bool better(const CandidateScore& a, const CandidateScore& b);
+
+  // SHA-256 (32 bytes) of what a run is: the code's digest, the inputs in their order and the replicate, in an encoding
+  // that no two different runs share and that does not change between versions.
+  static std::string input_digest(std::string_view code_digest, std::span<const v1::NamedValue> inputs, int replicate);
+
+  // SHA-256 (32 bytes) of the values as they are kept (pack_doubles).
+  static std::string candidate_digest(std::span<const double> values);
+
  private:
   struct Parts;
   explicit StudyPlan(std::unique_ptr<Parts> parts);
   std::unique_ptr<Parts> parts_;
 };
-
-// Whether `a` comes before `b` by the feasibility rules of Deb (2000): feasible before infeasible before failed before
-// withdrawn; of two feasible ones the smaller (first) objective, of two infeasible ones the smaller violation. Strict:
-// a tie is false, so whoever came earlier stays.
-bool better(const CandidateScore& a, const CandidateScore& b);
-
-// SHA-256 (32 bytes) of what a run is: the code's digest, the inputs in their order and the replicate, in an encoding
-// that no two different runs share and that does not change between versions.
-std::string input_digest(std::string_view code_digest, std::span<const v1::NamedValue> inputs, int replicate);
-
-// SHA-256 (32 bytes) of the values as they are kept (pack_doubles).
-std::string candidate_digest(std::span<const double> values);
 
 }  // namespace drover::study

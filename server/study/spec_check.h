@@ -12,12 +12,11 @@
 
 namespace drover::study {
 
-// One combination of condition values. `values` has one number a condition of the spec, in the study's units, the last
-// condition varying fastest; weights of all cells add up to 1.
-struct Cell {
-  int condition = 0;  // index of the cell, 0-based
-  std::vector<double> values;
-  double weight = 1.0;
+// One combination of condition values, a cell; its index in a list of all is the condition index of runs and scores.
+// (study::Cell is the message that keeps it in an event.)
+struct CellValues {
+  std::vector<double> values;  // one a condition of the spec, in the study's units
+  double weight = 1.0;         // the weights of all cells add up to 1
 };
 
 // What a spec is checked against. Borrowed for the call.
