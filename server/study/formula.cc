@@ -6,9 +6,9 @@
 #include <cmath>
 #include <cstddef>
 #include <exception>
-#include <map>
 #include <mutex>
 #include <optional>
+#include <set>
 #include <utility>
 
 #include "absl/strings/ascii.h"
@@ -16,6 +16,7 @@
 #include "status/try.h"
 #include "study/limits.h"
 #include "study/names.h"
+#include "study/wording.h"
 
 namespace drover::study {
 namespace {
@@ -125,9 +126,13 @@ struct Formula::Parts {
 
 absl::Status Formula::Parts::bind(std::string_view text, std::span<const std::string> known) {
   bound.assign(known.size(), 1.0);
+  std::set<std::string> there;
+  for (Word& word : words(text)) there.insert(std::move(word.name));
   try {
     for (std::size_t i = 0; i < known.size(); ++i) {
-      if (is_identifier(known[i]) && known[i].size() <= kMostNameLength) parser.DefineVar(known[i], &bound[i]);
+      if (!there.contains(known[i])) continue;  // a study may know thousands of names
+      const bool usable = is_identifier(known[i]) && known[i].size() < kMostNameLength;
+      if (usable && !parser.GetConst().contains(known[i])) parser.DefineVar(known[i], &bound[i]);
     }
     parser.SetExpr(std::string(text));
     return absl::OkStatus();

@@ -28,7 +28,8 @@ inline constexpr int kMostLookAhead = 1'000'000;
 inline constexpr int kLeastPopulation = 4;
 inline constexpr int kMostPopulation = 100'000;
 inline constexpr std::int64_t kMostBudgetRuns = 1'000'000'000;
-inline constexpr int kMostProblems = 1'000;        // reported at once; the rest are counted
+inline constexpr int kMostProblems = 1'000;        // reported at once
+inline constexpr int kMostNearest = 25;            // problems that are given the nearest name
 inline constexpr int kCandidateOrderParallel = 4;  // what `parallel` 0 means with order = "candidate"
 inline constexpr int kLookAheadPerParallel = 4;    // what `look_ahead` 0 means
 

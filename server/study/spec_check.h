@@ -37,7 +37,9 @@ struct CheckResult {
   // parallel, look_ahead. 0 stays in population, tolerance and share: the method's own default. Empty when there are
   // problems.
   v1::StudySpec effective;
-  std::vector<Cell> cells;     // one where the spec has no conditions; empty when there are problems
+  // The last condition varies fastest. One cell without values where the spec has no conditions; empty when there are
+  // problems.
+  std::vector<CellValues> cells;
   int runs_per_candidate = 0;  // cells x replicates; 0 when there are problems
 };
 

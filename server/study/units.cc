@@ -14,7 +14,7 @@
 #include "absl/strings/str_cat.h"
 #include "status/try.h"
 #include "study/limits.h"
-#include "study/names.h"
+#include "study/wording.h"
 
 namespace drover::study {
 namespace {
@@ -84,9 +84,8 @@ std::optional<Line> measured(const cv_converter* converter) {
   return Line{scale, offset};
 }
 
-absl::Status no_match(std::string_view from, std::string_view to, absl::string_view why) {
-  return absl::InvalidArgumentError(
-      absl::StrCat("unit ", quoted(from), " does not match ", quoted(to), why.empty() ? "" : ": ", why));
+absl::Status no_match(std::string_view from, std::string_view to) {
+  return absl::InvalidArgumentError(absl::StrCat("unit ", quoted(from), " does not match ", quoted(to)));
 }
 
 }  // namespace
@@ -135,13 +134,13 @@ absl::StatusOr<Conversion> Units::conversion(std::string_view from, std::string_
   const std::lock_guard lock(database_->mutex);
   DROVER_ASSIGN(const UnitPtr source, database_->parse(from));
   DROVER_ASSIGN(const UnitPtr target, database_->parse(to));
-  if (ut_are_convertible(source.get(), target.get()) == 0) return no_match(from, to, "");
+  if (ut_are_convertible(source.get(), target.get()) == 0) return no_match(from, to);
   const ConverterPtr forth(ut_get_converter(source.get(), target.get()));
   const ConverterPtr back(ut_get_converter(target.get(), source.get()));
-  if (forth == nullptr || back == nullptr) return no_match(from, to, "");
+  if (forth == nullptr || back == nullptr) return no_match(from, to);
   const std::optional<Line> line = measured(forth.get());
   const std::optional<Line> inverse = measured(back.get());
-  if (!line || !inverse) return no_match(from, to, "they are not related by a straight line");
+  if (!line || !inverse) return no_match(from, to);
   return joined(*line, *inverse);
 }
 
