@@ -15,7 +15,7 @@ std::string line(const char* format, Values... values) {
 }
 
 std::string item(const char* name, double value, const char* unit) {
-  return line(" %-24s%12.5E %s", name, value, unit);
+  return line(*unit == '\0' ? " %-24s%12.5E%s" : " %-24s%12.5E %s", name, value, unit);
 }
 
 std::string heading(const char* text) { return line("\n %s", text) + ' ' + std::string(48, '-') + '\n'; }

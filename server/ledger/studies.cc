@@ -1,0 +1,190 @@
+// Starting, pausing, resuming and stopping a study, and what its own thread hands in.
+#include <utility>
+
+#include "absl/strings/str_cat.h"
+#include "absl/strings/str_join.h"
+#include "ledger/handlers.h"
+#include "status/try.h"
+#include "study/bytes.h"
+#include "study/spec_check.h"
+
+namespace drover::ledger {
+namespace {
+
+absl::Status change(Turn& turn, std::int64_t study, v1::StudyState state, v1::StopReason reason,
+                    const std::string& sentence) {
+  study::Event event;
+  event.mutable_study_changed()->set_state(state);
+  event.mutable_study_changed()->set_reason(reason);
+  event.mutable_study_changed()->set_sentence(sentence);
+  return turn.emit(study, std::move(event)).status();
+}
+
+absl::StatusOr<StudyRecord*> open_study(Turn& turn, const std::string& name, const char* what) {
+  StudyRecord* const record = turn.state().study(name);
+  if (record != nullptr && !record->final()) return record;
+  DROVER_ASSIGN(const bool ended, turn.store().has_study(name));
+  if (!ended) return refusal(absl::StatusCode::kNotFound, "NO_SUCH_STUDY", absl::StrCat("no study named ", name));
+  return refusal(absl::StatusCode::kFailedPrecondition, "STUDY_ENDED",
+                 absl::StrCat("study ", name, " has come to its end; there is nothing to ", what));
+}
+
+study::CheckResult check(Turn& turn, const v1::StudySpec& spec, std::uint64_t seed,
+                         const std::vector<v1::CodeDefinition>& codes) {
+  int slots = 0;
+  for (const auto& [id, session] : turn.state().book.sessions()) {
+    if (!session.lapsed) slots += session.slots;
+  }
+  return study::check_spec(spec, {.codes = codes, .slots = slots, .fresh_seed = seed, .now = turn.now().wall});
+}
+
+study::StudyStarted started(const v1::StartStudyRequest& request, const study::CheckResult& checked,
+                            const StartSettings& settings, std::int64_t id) {
+  study::StudyStarted started;
+  started.set_study(id);
+  started.set_owner(request.owner());
+  *started.mutable_spec() = checked.effective;
+  for (std::size_t i = 0; i < checked.cells.size(); ++i) {
+    study::Cell& cell = *started.add_cells();
+    cell.set_condition(static_cast<std::int32_t>(i));
+    cell.set_values(study::pack_doubles(checked.cells[i].values));
+    cell.set_weight(study::pack_doubles({&checked.cells[i].weight, 1}));
+  }
+  if (checked.effective.search().order() == v1::ORDER_CANDIDATE) started.set_window(checked.effective.search().look_ahead());
+  started.set_fingerprint(settings.fingerprint);
+  started.set_seed(checked.effective.search().seed());
+  for (int i = 0; i < checked.effective.codes_size(); ++i) {
+    study::StudyCode& code = *started.add_codes();
+    code.set_index(i);
+    code.set_role(checked.effective.codes(i).role());
+    code.set_digest(checked.effective.codes(i).digest());
+    code.set_cost(checked.effective.codes(i).cost());
+  }
+  return started;
+}
+
+study::IssuedAsk issue(const StudyRecord& record, const Asked::One& one, std::int64_t ordinal, std::int64_t& next_run,
+                       std::int64_t& next_number) {
+  study::IssuedAsk issued;
+  issued.set_ask(one.ask.number);
+  issued.set_candidate(record.candidates + ordinal);
+  issued.set_purpose(one.ask.purpose);
+  issued.set_learned_through(one.learned_through);
+  issued.set_origin(v1::ORIGIN_SEARCH);
+  const std::vector<double> values = record.plan->user_values(one.ask.point);
+  issued.set_point(study::pack_doubles(one.ask.point));
+  issued.set_values(study::pack_doubles(values));
+  issued.set_digest(record.plan->candidate_digest(values));
+  const v1::CodeUse& code = record.spec.codes(0);
+  for (int condition = 0; condition < static_cast<int>(record.plan->cells().size()); ++condition) {
+    const std::vector<v1::NamedValue> inputs = record.plan->inputs(values, condition);
+    for (int replicate = 0; replicate < record.spec.replicates(); ++replicate) {
+      study::IssuedRun& run = *issued.add_runs();
+      run.set_run(next_run++);
+      run.set_number(next_number++);
+      run.set_condition(condition);
+      run.set_replicate(replicate);
+      run.set_input_digest(study::StudyPlan::input_digest(code.digest(), inputs, replicate));
+    }
+  }
+  return issued;
+}
+
+}  // namespace
+
+absl::Status start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings) {
+  DROVER_ASSIGN(const bool taken, turn.store().has_study(request.spec().name()));
+  if (taken) {
+    return refusal(absl::StatusCode::kAlreadyExists, "STUDY_EXISTS",
+                   absl::StrCat("there is a study named ", request.spec().name(),
+                                " already; give this one another name"));
+  }
+  const std::vector<v1::CodeDefinition> codes = turn.state().live_codes();
+  const study::CheckResult checked = check(turn, request.spec(), settings.fresh_seed, codes);
+  if (!checked.problems.empty()) return problems_refusal(checked.problems);
+  study::Event event;
+  *event.mutable_study_started() = started(request, checked, settings, turn.state().next_study);
+  return turn.emit(turn.state().next_study, std::move(event)).status();
+}
+
+absl::Status pause_study(Turn& turn, const std::string& name) {
+  DROVER_ASSIGN(const StudyRecord* const record, open_study(turn, name, "pause"));
+  if (record->state == v1::STUDY_STATE_PAUSED) return absl::OkStatus();
+  if (record->state != v1::STUDY_STATE_ACTIVE) {
+    return refusal(absl::StatusCode::kFailedPrecondition, "WRONG_STATE",
+                   absl::StrCat("study ", name, " cannot be paused: ", v1::StudyState_Name(record->state)));
+  }
+  return change(turn, record->id, v1::STUDY_STATE_PAUSED, v1::STOP_REASON_UNSPECIFIED,
+                "paused; what runs goes on, nothing new is granted");
+}
+
+absl::Status resume_study(Turn& turn, const std::string& name) {
+  DROVER_ASSIGN(const StudyRecord* const record, open_study(turn, name, "resume"));
+  if (record->state == v1::STUDY_STATE_ACTIVE) return absl::OkStatus();
+  if (record->state != v1::STUDY_STATE_PAUSED && record->state != v1::STUDY_STATE_FAILED) {
+    return refusal(absl::StatusCode::kFailedPrecondition, "WRONG_STATE",
+                   absl::StrCat("study ", name, " cannot be resumed: ", v1::StudyState_Name(record->state)));
+  }
+  return change(turn, record->id, v1::STUDY_STATE_ACTIVE, v1::STOP_REASON_UNSPECIFIED, "resumed");
+}
+
+absl::Status stop_study(Turn& turn, const std::string& name) {
+  DROVER_ASSIGN(const StudyRecord* const record, open_study(turn, name, "stop"));
+  if (record->state == v1::STUDY_STATE_STOPPING) return absl::OkStatus();
+  const std::int64_t id = record->id;
+  DROVER_TRY(change(turn, id, v1::STUDY_STATE_STOPPING, v1::STOP_REASON_PERSON,
+                    "stopped by a person; waits for what runs to end"));
+  for (const std::int64_t run_id : turn.state().book.open_runs(id)) {
+    const std::map<std::int64_t, dispatch::Attempt> attempts = turn.state().book.run(run_id)->attempts;
+    for (const auto& [fence, attempt] : attempts) {
+      study::Event event;
+      event.mutable_stop_asked()->set_run(run_id);
+      event.mutable_stop_asked()->set_fence(fence);
+      DROVER_TRY(turn.emit(id, std::move(event)).status());
+    }
+    if (attempts.empty()) DROVER_TRY(withdraw(turn, run_id));
+  }
+  return after_stop(turn, id);
+}
+
+absl::Status issue_asks(Turn& turn, const Asked& asked) {
+  State& state = turn.state();
+  const StudyRecord* const record = state.study(asked.study);
+  if (record == nullptr || record->final() || record->absorbed != asked.absorbed_before) {
+    return absl::AbortedError("the study has gone on meanwhile");
+  }
+  study::Standing before = state.standing(*record, turn.now().wall);
+  before.absorbed = asked.absorbed_through;
+  if (static_cast<std::int64_t>(asked.asks.size()) > study::candidates_wanted(before)) {
+    return absl::AbortedError("the study asks for no more candidates");
+  }
+  study::Event event;
+  study::AsksIssued& issued = *event.mutable_asks_issued();
+  std::int64_t next_run = state.next_run, next_number = record->runs + 1, ordinal = 0;
+  for (const Asked::One& one : asked.asks) {
+    *issued.add_asks() = issue(*record, one, ++ordinal, next_run, next_number);
+  }
+  issued.set_absorbed_through(asked.absorbed_through);
+  issued.set_search_state(asked.search_state);
+  issued.set_sentence(asked.progress.sentence);
+  issued.set_converged(asked.progress.converged);
+  issued.set_swarm_low(study::pack_doubles(asked.progress.swarm_low));
+  issued.set_swarm_high(study::pack_doubles(asked.progress.swarm_high));
+  DROVER_TRY(turn.emit(asked.study, std::move(event)).status());
+  // Twice, since what has just begun to finish may be over already.
+  for (int step = 0; step < 2; ++step) {
+    const study::Standing now = state.standing(*record, turn.now().wall);
+    const study::Turn next = study::next_turn(now, asked.progress.converged, asked.dry, asked.progress.sentence, record->reason);
+    if (next.state == v1::STUDY_STATE_UNSPECIFIED) break;
+    DROVER_TRY(change(turn, asked.study, next.state, next.reason, next.sentence));
+  }
+  return absl::OkStatus();
+}
+
+absl::Status fail_study(Turn& turn, std::int64_t study, const std::string& why) {
+  const StudyRecord* const record = turn.state().study(study);
+  if (record == nullptr || record->final() || record->state == v1::STUDY_STATE_FAILED) return absl::OkStatus();
+  return change(turn, study, v1::STUDY_STATE_FAILED, v1::STOP_REASON_FAILURE, why);
+}
+
+}  // namespace drover::ledger
