@@ -111,7 +111,13 @@ class Learners::Learner {
       DROVER_ASSIGN(reader_, store::Reader::open(folder_));
     }
     DROVER_ASSIGN(const store::SearchRow row, reader_->search(study_));
-    DROVER_ASSIGN(plan_, study::StudyPlan::make(row.spec, row.codes, row.cells));
+    std::vector<study::CellValues> cells;
+    for (const study::Cell& cell : row.cells) {
+      study::CellValues& values = cells.emplace_back();
+      DROVER_ASSIGN(values.values, study::unpack_doubles(cell.values()));
+      DROVER_ASSIGN(values.weight, study::unpack_double(cell.weight()));
+    }
+    DROVER_ASSIGN(plan_, study::StudyPlan::make(row.spec, row.codes, cells));
     DROVER_ASSIGN(method_, search::make_method(plan_->space(), plan_->settings()));
     history_.emplace(*reader_, *plan_, study_);
     history_->set_size(row.absorbed_through);

@@ -43,7 +43,10 @@ void Readers::work(store::Reader& reader) {
     const std::function<void(store::Reader&)> read = std::move(queue_.front());
     queue_.pop_front();
     lock.unlock();
+    // Without a snapshot the questions fail by themselves, in words.
+    static_cast<void>(reader.begin_snapshot());
     read(reader);
+    reader.end_snapshot();
     lock.lock();
   }
 }

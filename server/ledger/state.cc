@@ -10,6 +10,12 @@
 
 namespace drover::ledger {
 
+namespace {
+
+bool grants(v1::StudyState state) { return state == v1::STUDY_STATE_ACTIVE || state == v1::STUDY_STATE_FINISHING; }
+
+}  // namespace
+
 State::State(const dispatch::Times& times) : book(times) {}
 
 StudyRecord* State::study(std::int64_t id) {
@@ -76,8 +82,7 @@ absl::Status State::apply(const study::Event& event, absl::Duration now) {
   StudyRecord* const record = study(event.study());
   switch (event.kind_case()) {
     case Event::kCodeDefined:
-      codes_[event.code_defined().definition().digest()] = event.code_defined().definition();
-      code_order_.push_back(event.code_defined().definition().digest());
+      add_code(event.code_defined().definition());
       return absl::OkStatus();
     case Event::kSessionOpened:
       next_session = std::max(next_session, event.session_opened().session() + 1);
@@ -88,8 +93,7 @@ absl::Status State::apply(const study::Event& event, absl::Duration now) {
       if (record == nullptr) return absl::InternalError("a study changed that is not open");
       record->state = event.study_changed().state();
       record->reason = event.study_changed().reason();
-      book.set_granting(record->id, record->state == v1::STUDY_STATE_ACTIVE ||
-                                        record->state == v1::STUDY_STATE_FINISHING);
+      book.set_granting(record->id, grants(record->state));
       return absl::OkStatus();
     case Event::kAsksIssued:
       if (record == nullptr) return absl::InternalError("asks were issued for a study that is not open");
@@ -105,6 +109,11 @@ absl::Status State::apply(const study::Event& event, absl::Duration now) {
   }
 }
 
+void State::add_code(const v1::CodeDefinition& definition) {
+  codes_[definition.digest()] = definition;
+  code_order_.push_back(definition.digest());
+}
+
 absl::Status State::start_study(const study::StudyStarted& started) {
   StudyRecord record;
   record.id = started.study();
@@ -112,6 +121,10 @@ absl::Status State::start_study(const study::StudyStarted& started) {
   record.spec = started.spec();
   record.state = v1::STUDY_STATE_ACTIVE;
   record.look_ahead = started.window();
+  return add_study(std::move(record), {started.cells().begin(), started.cells().end()});
+}
+
+absl::Status State::add_study(StudyRecord record, const std::vector<study::Cell>& cells) {
   next_study = std::max(next_study, record.id + 1);
   std::vector<v1::CodeDefinition> definitions;
   for (const v1::CodeUse& use : record.spec.codes()) {
@@ -119,8 +132,14 @@ absl::Status State::start_study(const study::StudyStarted& started) {
     if (definition == nullptr) return absl::InternalError(absl::StrCat("code ", use.digest(), " is not in the store"));
     definitions.push_back(*definition);
   }
-  DROVER_ASSIGN(record.plan, study::StudyPlan::make(record.spec, definitions));
-  dispatch::Study booked{.id = record.id, .priority = record.spec.priority(), .granting = true};
+  std::vector<study::CellValues> values;
+  for (const study::Cell& cell : cells) {
+    study::CellValues& one = values.emplace_back();
+    DROVER_ASSIGN(one.values, study::unpack_doubles(cell.values()));
+    DROVER_ASSIGN(one.weight, study::unpack_double(cell.weight()));
+  }
+  DROVER_ASSIGN(record.plan, study::StudyPlan::make(record.spec, definitions, values));
+  dispatch::Study booked{.id = record.id, .priority = record.spec.priority(), .granting = grants(record.state)};
   booked.tags.assign(record.spec.tags().begin(), record.spec.tags().end());
   for (const v1::CodeDefinition& definition : definitions) {
     booked.code_digests.push_back(definition.digest());
@@ -137,7 +156,7 @@ absl::Status State::issue(StudyRecord& record, const study::AsksIssued& issued) 
   record.absorbed = issued.absorbed_through();
   for (const study::IssuedAsk& ask : issued.asks()) {
     OpenCandidate candidate{.number = ask.candidate(), .ask = ask.ask(), .runs = ask.runs_size()};
-    candidate.values = study::unpack_doubles(ask.values());
+    DROVER_ASSIGN(candidate.values, study::unpack_doubles(ask.values()));
     record.asked += ask.ask() > 0 ? 1 : 0;
     record.candidates = std::max(record.candidates, ask.candidate());
     record.runs += ask.runs_size();

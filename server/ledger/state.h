@@ -83,7 +83,10 @@ class State {
 
  private:
   absl::Status start_study(const study::StudyStarted& started);
+  absl::Status add_study(StudyRecord record, const std::vector<study::Cell>& cells);
+  void add_code(const v1::CodeDefinition& definition);
   absl::Status load_study(store::Store& store, const store::StudyRow& row);
+  absl::Status load_runs(store::Store& store, absl::Duration now);
   absl::Status issue(StudyRecord& record, const study::AsksIssued& issued);
   void end_run(const dispatch::Run& run, const v1::AttemptReport* report);
 

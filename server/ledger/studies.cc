@@ -48,7 +48,7 @@ study::StudyStarted started(const v1::StartStudyRequest& request, const study::C
     study::Cell& cell = *started.add_cells();
     cell.set_condition(static_cast<std::int32_t>(i));
     cell.set_values(study::pack_doubles(checked.cells[i].values));
-    cell.set_weight(study::pack_doubles({&checked.cells[i].weight, 1}));
+    cell.set_weight(study::pack_double(checked.cells[i].weight));
   }
   if (checked.effective.search().order() == v1::ORDER_CANDIDATE) started.set_window(checked.effective.search().look_ahead());
   started.set_fingerprint(settings.fingerprint);

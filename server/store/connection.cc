@@ -18,6 +18,8 @@ absl::Status to_status(sqlite3* database, int code, std::string_view what) {
   const std::string text = absl::StrCat(std::string(what), ": ",
                                         database != nullptr ? sqlite3_errmsg(database) : sqlite3_errstr(code), " (",
                                         sqlite3_errstr(code), ", SQLite code ", code, ")");
+  // The index of the log could not grow: nothing was written.
+  if (code == SQLITE_IOERR_SHMSIZE) return absl::ResourceExhaustedError(absl::StrCat("the disk is full: ", text));
   switch (code & 0xff) {
     case SQLITE_FULL:
       return absl::ResourceExhaustedError(absl::StrCat("the disk is full: ", text));
@@ -59,7 +61,7 @@ absl::Status Connection::set_up(Kind kind) {
   sqlite3_db_config(database_, SQLITE_DBCONFIG_DQS_DML, 0, nullptr);
   sqlite3_db_config(database_, SQLITE_DBCONFIG_DQS_DDL, 0, nullptr);
   sqlite3_db_config(database_, SQLITE_DBCONFIG_DEFENSIVE, 1, nullptr);
-  DROVER_TRY(execute("PRAGMA trusted_schema = OFF; PRAGMA cell_size_check = ON; PRAGMA mmap_size = 0"));
+  DROVER_TRY(execute("PRAGMA trusted_schema = OFF; PRAGMA cell_size_check = ON; PRAGMA mmap_size = 0; PRAGMA temp_store = MEMORY"));
   if (kind == Kind::kReader) {
     // Checkpoints by two connections at once can corrupt the file in 3.40 (the WAL-reset race).
     DROVER_TRY(execute("PRAGMA wal_autocheckpoint = 0"));
@@ -184,5 +186,11 @@ std::string Statement::bytes(int column) const {
 }
 
 bool Statement::null(int column) const { return sqlite3_column_type(statement_, column) == SQLITE_NULL; }
+
+Statement& Prepared::operator[](std::string_view sql) {
+  const auto at = statements_.find(sql);
+  if (at != statements_.end()) return at->second;
+  return statements_.emplace(std::string(sql), Statement(connection_, std::string(sql))).first->second;
+}
 
 }  // namespace drover::store

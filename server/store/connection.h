@@ -4,6 +4,8 @@
 #include <sqlite3.h>
 
 #include <cstdint>
+#include <functional>
+#include <map>
 #include <memory>
 #include <string>
 #include <string_view>
@@ -71,6 +73,17 @@ class Statement {
   std::string sql_;
   sqlite3_stmt* statement_ = nullptr;
   int code_ = SQLITE_OK;
+};
+
+// Prepared statements by their text. Of one connection and one thread; goes before its connection.
+class Prepared {
+ public:
+  explicit Prepared(Connection& connection) : connection_(connection) {}
+  Statement& operator[](std::string_view sql);
+
+ private:
+  Connection& connection_;
+  std::map<std::string, Statement, std::less<>> statements_;
 };
 
 }  // namespace drover::store
