@@ -29,7 +29,7 @@ absl::Status set_state(Prepared& sql, std::int64_t run, std::int64_t fence, std:
   Statement& update = sql[R"sql(
       UPDATE attempt SET state = ?1
       WHERE run = ?2 AND fence = ?3 AND state IN ('granted', 'begun', 'parked', 'stopping'))sql"];
-  return update.bind(1, state).bind(2, run).bind(3, fence).run_on_one(absl::StrCat("an attempt that is ", state));
+  return update.bind(1, state).bind(2, run).bind(3, fence).run_on_one(absl::StrCat("an attempt that is ", std::string(state)));
 }
 
 absl::Status hear(Prepared& sql, const study::Heard& heard) {
@@ -54,7 +54,7 @@ absl::Status end_attempt(Prepared& sql, std::int64_t run, std::int64_t fence, st
       WHERE run = ?6 AND fence = ?7 AND state NOT IN ('settled', 'duplicate'))sql"];
   update.bind(1, state).bind(2, report.reason()).bind(3, std::int64_t{report.abnormal()});
   update.bind_bytes(4, canonical(report)).bind(5, number).bind(6, run).bind(7, fence);
-  DROVER_TRY(update.run_on_one(absl::StrCat("an attempt that is ", state)));
+  DROVER_TRY(update.run_on_one(absl::StrCat("an attempt that is ", std::string(state))));
   return free_licences(sql, run, fence);
 }
 

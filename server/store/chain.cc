@@ -31,6 +31,6 @@ std::string canonical(const google::protobuf::MessageLite& message) {
   return bytes;
 }
 
-std::string hex(std::string_view bytes) { return absl::BytesToHexString(bytes); }
+std::string hex(std::string_view bytes) { return absl::BytesToHexString({bytes.data(), bytes.size()}); }
 
 }  // namespace drover::store

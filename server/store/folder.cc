@@ -133,7 +133,7 @@ absl::StatusOr<std::optional<Folder::HighWater>> Folder::high_water() const {
   const ssize_t size = pread(file, bytes.data(), bytes.size(), 0);
   close(file);
   if (size == 0) return std::nullopt;
-  const std::string_view text(bytes.data(), bytes.size());
+  const absl::string_view text(bytes.data(), bytes.size());
   std::uint64_t event = 0;
   // Written in one piece below a block's size: a torn one is a damaged disk, and says nothing.
   if (size != static_cast<ssize_t>(kMarkBytes) || !absl::SimpleHexAtoi(text.substr(0, 16), &event)) return std::nullopt;
