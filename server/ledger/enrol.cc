@@ -1,4 +1,5 @@
 // Enrolment and its roll call (reliability: a worker's disk is the truth about its processes).
+#include <algorithm>
 #include <set>
 #include <utility>
 
@@ -152,6 +153,14 @@ absl::Status call_roll(Turn& turn, const std::vector<v1::RollEntry>& roll, const
   return absl::OkStatus();
 }
 
+// A page of a roll call may come twice.
+void add_once(std::vector<v1::RollEntry>& roll, const v1::RollEntry& entry) {
+  const bool there = std::any_of(roll.begin(), roll.end(), [&](const v1::RollEntry& other) {
+    return other.run() == entry.run() && other.fence() == entry.fence();
+  });
+  if (!there) roll.push_back(entry);
+}
+
 }  // namespace
 
 absl::StatusOr<v1::EnrolResponse> enrol(Turn& turn, const v1::EnrolRequest& request, const std::string& fresh_token) {
@@ -166,7 +175,7 @@ absl::StatusOr<v1::EnrolResponse> enrol(Turn& turn, const v1::EnrolRequest& requ
   set(*response.mutable_renew_every(), state.book.times().renew_every);
   set(*response.mutable_longest_wait(), state.book.times().longest_poll);
   std::vector<v1::RollEntry>& roll = state.roll_calls[request.worker()];
-  roll.insert(roll.end(), request.roll_call().begin(), request.roll_call().end());
+  for (const v1::RollEntry& entry : request.roll_call()) add_once(roll, entry);
   if (!request.roll_call_complete()) return response;
   const std::vector<v1::RollEntry> whole = std::move(roll);
   state.roll_calls.erase(request.worker());

@@ -35,11 +35,11 @@ struct StartSettings {
   std::uint64_t fresh_seed = 0;
   std::string fingerprint;  // of this machine
 };
-// The answer of each is the study's name; the caller reads the study once it is committed.
-absl::Status start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings);
-absl::Status pause_study(Turn& turn, const std::string& name);
-absl::Status resume_study(Turn& turn, const std::string& name);
-absl::Status stop_study(Turn& turn, const std::string& name);
+// Each answers with the study as it left it, without counts, best and figures: those are read.
+absl::StatusOr<v1::Study> start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings);
+absl::StatusOr<v1::Study> pause_study(Turn& turn, const std::string& name);
+absl::StatusOr<v1::Study> resume_study(Turn& turn, const std::string& name);
+absl::StatusOr<v1::Study> stop_study(Turn& turn, const std::string& name);
 
 // What a study's own thread hands in: asks it made after learning `absorbed_through`.
 struct Asked {

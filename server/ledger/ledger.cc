@@ -19,7 +19,7 @@ absl::StatusOr<std::unique_ptr<Ledger>> Ledger::start(std::unique_ptr<store::Sto
 }
 
 Ledger::Ledger(std::unique_ptr<store::Store> store, Options options)
-    : store_(std::move(store)), options_(std::move(options)), now_(options_.clock()) {
+    : store_(std::move(store)), options_(std::move(options)), now_(options_.clock()), started_(now_.wall) {
   tick_ = std::clamp(options_.times.lease / 10, absl::Milliseconds(20), absl::Seconds(1));
 }
 

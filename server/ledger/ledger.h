@@ -93,6 +93,7 @@ class Ledger {
   std::vector<v1::Worker> workers() const;
   std::vector<v1::CodeDefinition> codes() const;
   v1::Coordinator coordinator() const;
+  absl::Time wall_time() const { return options_.clock().wall; }  // for people and deadlines
 
  private:
   struct Waiting {
@@ -126,6 +127,7 @@ class Ledger {
 
   // The turn in progress; writer thread only.
   Now now_;
+  absl::Time started_;
   bool in_transaction_ = false;
   bool may_grant_ = false;
   bool disk_ok_ = true;
@@ -142,7 +144,7 @@ class Ledger {
   mutable std::mutex published_mutex_;
   std::map<std::int64_t, study::Standing> standings_;
   std::map<std::int64_t, StudyFigures> figures_;
-  std::vector<v1::Worker> workers_;
+  std::map<std::string, v1::Worker> workers_;
   std::vector<v1::CodeDefinition> codes_;
   v1::Coordinator coordinator_;
 

@@ -85,6 +85,8 @@ absl::Status State::load_study(store::Store& store, const store::StudyRow& row) 
   StudyRecord record;
   record.id = row.id;
   record.name = row.name;
+  record.owner = row.owner;
+  record.sentence = row.sentence;
   record.spec = row.spec;
   record.state = row.state;
   record.reason = row.reason;

@@ -93,6 +93,7 @@ absl::Status State::apply(const study::Event& event, absl::Duration now) {
       if (record == nullptr) return absl::InternalError("a study changed that is not open");
       record->state = event.study_changed().state();
       record->reason = event.study_changed().reason();
+      record->sentence = event.study_changed().sentence();
       book.set_granting(record->id, grants(record->state));
       return absl::OkStatus();
     case Event::kAsksIssued:
@@ -118,6 +119,7 @@ absl::Status State::start_study(const study::StudyStarted& started) {
   StudyRecord record;
   record.id = started.study();
   record.name = started.spec().name();
+  record.owner = started.owner();
   record.spec = started.spec();
   record.state = v1::STUDY_STATE_ACTIVE;
   record.look_ahead = started.window();

@@ -35,10 +35,11 @@ struct OpenCandidate {
 
 struct StudyRecord {
   std::int64_t id = 0;
-  std::string name;
+  std::string name, owner;
   v1::StudySpec spec;  // effective
   v1::StudyState state = v1::STUDY_STATE_UNSPECIFIED;
   v1::StopReason reason = v1::STOP_REASON_UNSPECIFIED;
+  std::string sentence;
   std::shared_ptr<const study::StudyPlan> plan;
   std::int64_t look_ahead = 0;
   std::int64_t asked = 0;       // by the search

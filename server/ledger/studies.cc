@@ -20,6 +20,19 @@ absl::Status change(Turn& turn, std::int64_t study, v1::StudyState state, v1::St
   return turn.emit(study, std::move(event)).status();
 }
 
+const char* state_word(v1::StudyState state) {
+  switch (state) {
+    case v1::STUDY_STATE_ACTIVE: return "active";
+    case v1::STUDY_STATE_PAUSED: return "paused";
+    case v1::STUDY_STATE_FINISHING: return "finishing";
+    case v1::STUDY_STATE_FINISHED: return "finished";
+    case v1::STUDY_STATE_STOPPING: return "stopping";
+    case v1::STUDY_STATE_STOPPED: return "stopped";
+    case v1::STUDY_STATE_FAILED: return "failed";
+    default: return "in no known state";
+  }
+}
+
 absl::StatusOr<StudyRecord*> open_study(Turn& turn, const std::string& name, const char* what) {
   StudyRecord* const record = turn.state().study(name);
   if (record != nullptr && !record->final()) return record;
@@ -27,6 +40,23 @@ absl::StatusOr<StudyRecord*> open_study(Turn& turn, const std::string& name, con
   if (!ended) return refusal(absl::StatusCode::kNotFound, "NO_SUCH_STUDY", absl::StrCat("no study named ", name));
   return refusal(absl::StatusCode::kFailedPrecondition, "STUDY_ENDED",
                  absl::StrCat("study ", name, " has come to its end; there is nothing to ", what));
+}
+
+v1::Study shown(Turn& turn, const StudyRecord& record) {
+  v1::Study study;
+  study.set_name(record.name);
+  study.set_owner(record.owner);
+  study.set_state(record.state);
+  study.set_reason(record.reason);
+  study.set_sentence(record.sentence);
+  study.set_revision(turn.store().head().number);
+  *study.mutable_spec() = record.spec;
+  return study;
+}
+
+absl::Status cannot(const StudyRecord& record, const char* what) {
+  return refusal(absl::StatusCode::kFailedPrecondition, "WRONG_STATE",
+                 absl::StrCat("study ", record.name, " cannot be ", what, " while it is ", state_word(record.state)));
 }
 
 study::CheckResult check(Turn& turn, const v1::StudySpec& spec, std::uint64_t seed,
@@ -90,9 +120,23 @@ study::IssuedAsk issue(const StudyRecord& record, const Asked::One& one, std::in
   return issued;
 }
 
+// Ends a run: at once where nobody has it, else once its attempts have ended.
+absl::Status stop_run(Turn& turn, std::int64_t study, std::int64_t run) {
+  const std::map<std::int64_t, dispatch::Attempt> attempts = turn.state().book.run(run)->attempts;
+  if (attempts.empty()) return withdraw(turn, run);
+  for (const auto& [fence, attempt] : attempts) {
+    if (attempt.state == dispatch::Attempt::State::kStopping) continue;
+    study::Event event;
+    event.mutable_stop_asked()->set_run(run);
+    event.mutable_stop_asked()->set_fence(fence);
+    DROVER_TRY(turn.emit(study, std::move(event)).status());
+  }
+  return absl::OkStatus();
+}
+
 }  // namespace
 
-absl::Status start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings) {
+absl::StatusOr<v1::Study> start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings) {
   DROVER_ASSIGN(const bool taken, turn.store().has_study(request.spec().name()));
   if (taken) {
     return refusal(absl::StatusCode::kAlreadyExists, "STUDY_EXISTS",
@@ -102,49 +146,40 @@ absl::Status start_study(Turn& turn, const v1::StartStudyRequest& request, const
   const std::vector<v1::CodeDefinition> codes = turn.state().live_codes();
   const study::CheckResult checked = check(turn, request.spec(), settings.fresh_seed, codes);
   if (!checked.problems.empty()) return problems_refusal(checked.problems);
+  const std::int64_t id = turn.state().next_study;
   study::Event event;
-  *event.mutable_study_started() = started(request, checked, settings, turn.state().next_study);
-  return turn.emit(turn.state().next_study, std::move(event)).status();
+  *event.mutable_study_started() = started(request, checked, settings, id);
+  DROVER_TRY(turn.emit(id, std::move(event)).status());
+  return shown(turn, *turn.state().study(id));
 }
 
-absl::Status pause_study(Turn& turn, const std::string& name) {
+absl::StatusOr<v1::Study> pause_study(Turn& turn, const std::string& name) {
   DROVER_ASSIGN(const StudyRecord* const record, open_study(turn, name, "pause"));
-  if (record->state == v1::STUDY_STATE_PAUSED) return absl::OkStatus();
-  if (record->state != v1::STUDY_STATE_ACTIVE) {
-    return refusal(absl::StatusCode::kFailedPrecondition, "WRONG_STATE",
-                   absl::StrCat("study ", name, " cannot be paused: ", v1::StudyState_Name(record->state)));
-  }
-  return change(turn, record->id, v1::STUDY_STATE_PAUSED, v1::STOP_REASON_UNSPECIFIED,
-                "paused; what runs goes on, nothing new is granted");
+  if (record->state == v1::STUDY_STATE_PAUSED) return shown(turn, *record);
+  if (record->state != v1::STUDY_STATE_ACTIVE) return cannot(*record, "paused");
+  DROVER_TRY(change(turn, record->id, v1::STUDY_STATE_PAUSED, v1::STOP_REASON_UNSPECIFIED,
+                    "paused; what runs goes on, nothing new is granted"));
+  return shown(turn, *record);
 }
 
-absl::Status resume_study(Turn& turn, const std::string& name) {
+absl::StatusOr<v1::Study> resume_study(Turn& turn, const std::string& name) {
   DROVER_ASSIGN(const StudyRecord* const record, open_study(turn, name, "resume"));
-  if (record->state == v1::STUDY_STATE_ACTIVE) return absl::OkStatus();
-  if (record->state != v1::STUDY_STATE_PAUSED && record->state != v1::STUDY_STATE_FAILED) {
-    return refusal(absl::StatusCode::kFailedPrecondition, "WRONG_STATE",
-                   absl::StrCat("study ", name, " cannot be resumed: ", v1::StudyState_Name(record->state)));
-  }
-  return change(turn, record->id, v1::STUDY_STATE_ACTIVE, v1::STOP_REASON_UNSPECIFIED, "resumed");
+  if (record->state == v1::STUDY_STATE_ACTIVE) return shown(turn, *record);
+  const bool can = record->state == v1::STUDY_STATE_PAUSED || record->state == v1::STUDY_STATE_FAILED;
+  if (!can) return cannot(*record, "resumed");
+  DROVER_TRY(change(turn, record->id, v1::STUDY_STATE_ACTIVE, v1::STOP_REASON_UNSPECIFIED, "resumed"));
+  return shown(turn, *record);
 }
 
-absl::Status stop_study(Turn& turn, const std::string& name) {
+absl::StatusOr<v1::Study> stop_study(Turn& turn, const std::string& name) {
   DROVER_ASSIGN(const StudyRecord* const record, open_study(turn, name, "stop"));
-  if (record->state == v1::STUDY_STATE_STOPPING) return absl::OkStatus();
+  if (record->state == v1::STUDY_STATE_STOPPING) return shown(turn, *record);
   const std::int64_t id = record->id;
   DROVER_TRY(change(turn, id, v1::STUDY_STATE_STOPPING, v1::STOP_REASON_PERSON,
                     "stopped by a person; waits for what runs to end"));
-  for (const std::int64_t run_id : turn.state().book.open_runs(id)) {
-    const std::map<std::int64_t, dispatch::Attempt> attempts = turn.state().book.run(run_id)->attempts;
-    for (const auto& [fence, attempt] : attempts) {
-      study::Event event;
-      event.mutable_stop_asked()->set_run(run_id);
-      event.mutable_stop_asked()->set_fence(fence);
-      DROVER_TRY(turn.emit(id, std::move(event)).status());
-    }
-    if (attempts.empty()) DROVER_TRY(withdraw(turn, run_id));
-  }
-  return after_stop(turn, id);
+  for (const std::int64_t run : turn.state().book.open_runs(id)) DROVER_TRY(stop_run(turn, id, run));
+  DROVER_TRY(after_stop(turn, id));
+  return shown(turn, *record);
 }
 
 absl::Status issue_asks(Turn& turn, const Asked& asked) {

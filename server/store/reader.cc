@@ -104,6 +104,25 @@ absl::StatusOr<std::vector<std::string>> Reader::study_names() {
 
 absl::StatusOr<std::vector<v1::CodeDefinition>> Reader::codes(std::int64_t study) { return codes_of(*sql_, study); }
 
+absl::StatusOr<std::vector<study::Cell>> Reader::cells(std::int64_t study) { return cells_of(*sql_, study); }
+
+absl::StatusOr<std::map<std::string, std::int64_t>> Reader::open_counts(std::int64_t study) {
+  // A run is what its newest attempt is that has not been given up; without one it waits.
+  Statement& rows = (*sql_)[R"sql(
+      SELECT CASE r.life WHEN 'set_aside' THEN 'set_aside'
+                         ELSE coalesce((SELECT a.state FROM attempt AS a
+                                        WHERE a.run = r.id AND a.released = 0
+                                          AND a.state IN ('granted', 'begun', 'parked', 'stopping')
+                                        ORDER BY a.fence DESC LIMIT 1), 'waiting') END AS state,
+             count(*)
+      FROM run AS r WHERE r.study = ?1 AND r.life IN ('open', 'set_aside') GROUP BY 1)sql"];
+  std::map<std::string, std::int64_t> counts;
+  rows.bind(1, study);
+  while (rows.next()) counts[rows.text(0)] = rows.integer(1);
+  DROVER_TRY(rows.end());
+  return counts;
+}
+
 absl::StatusOr<std::optional<CandidateRow>> Reader::candidate(std::int64_t study, std::int64_t number) {
   Statement& row = (*sql_)[absl::StrCat("SELECT ", candidate_columns(),
                                         " FROM candidate AS c WHERE c.study = ?1 AND c.number = ?2")];

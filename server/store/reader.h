@@ -2,6 +2,7 @@
 #pragma once
 
 #include <cstdint>
+#include <map>
 #include <memory>
 #include <optional>
 #include <string>
@@ -34,6 +35,9 @@ class Reader {
   absl::StatusOr<std::vector<StudyRow>> studies(const std::string& after, int limit);  // by name
   absl::StatusOr<std::vector<std::string>> study_names();
   absl::StatusOr<std::vector<v1::CodeDefinition>> codes(std::int64_t study);
+  absl::StatusOr<std::vector<study::Cell>> cells(std::int64_t study);
+  // How many of the study's open runs are waiting, granted, begun, parked, stopping, set_aside (by these names).
+  absl::StatusOr<std::map<std::string, std::int64_t>> open_counts(std::int64_t study);
   absl::StatusOr<std::optional<CandidateRow>> candidate(std::int64_t study, std::int64_t number);
   absl::StatusOr<std::vector<CandidateRow>> candidates(std::int64_t study, std::int64_t after, int limit);  // by number
   // Each with its open attempts, or the one that settled it, or the newest.
