@@ -6,7 +6,7 @@
 
 #include "absl/strings/str_cat.h"
 #include "absl/time/time.h"
-#include "search/method.h"
+#include "search/methods.h"
 #include "study/findings.h"
 #include "study/limits.h"
 #include "study/wording.h"
@@ -14,12 +14,10 @@
 namespace drover::study {
 namespace {
 
-constexpr std::string_view kUsualMethod = "leapfrogging";
-
 void check_method(Draft& draft) {
   const std::string& method = draft.given.search().method();
   if (method.empty()) {
-    draft.effective.mutable_search()->set_method(std::string(kUsualMethod));
+    draft.effective.mutable_search()->set_method(std::string(search::kDefaultMethod));
     return;
   }
   const std::vector<std::string> known = search::method_names();

@@ -79,7 +79,6 @@ class StudyPlan {
   // are of kind CHECK): kind and reason are those of the first such run by condition and replicate, 'condition 2
   // (river_flow = 0.35 m3/s): ...' (1-based, for people). Else WITHDRAWN when a run was withdrawn. Objectives are
   // minimised (negated where the sense is MAXIMISE).
-  //
   CandidateScore score(std::span<const double> values, std::span<const RunResult> runs) const;
 
   // What the method learns. INVALID_ARGUMENT when the score's bytes are no score of this study.
