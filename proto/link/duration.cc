@@ -2,73 +2,83 @@
 
 #include <algorithm>
 #include <array>
-#include <charconv>
 #include <cmath>
-#include <cstdio>
-#include <utility>
+#include <cstdint>
 
+#include "absl/strings/numbers.h"
 #include "absl/strings/str_cat.h"
+#include "absl/strings/str_format.h"
+#include "link/text.h"
 
 namespace drover::link {
 namespace {
 
-constexpr absl::Duration kDay = absl::Hours(24);
-constexpr absl::Duration kLongest = absl::Hours(24 * 3'652'425);  // 10,000 years
+constexpr std::int64_t kMostSeconds = 315'576'000'000;  // 10,000 years: what the message may hold
 
-absl::Status malformed(std::string_view text) {
-  return absl::InvalidArgumentError(
-      absl::StrCat("\"", std::string(text), "\" is no span of time; write it as \"90s\", \"2h\" or \"1h30m\""));
+absl::Status unreadable(std::string_view text) {
+  return absl::InvalidArgumentError(absl::StrCat("\"", printable(text),
+                                                 "\" is no span of time; write a number with its unit (ms, s, m, h, d), "
+                                                 "as in 90s, 1h30m or 1.5d"));
 }
 
-// Takes the unit at the beginning of `rest` off; zero: there is none.
-absl::Duration take_unit(std::string_view& rest) {
-  static constexpr std::array<std::pair<std::string_view, absl::Duration>, 5> kUnits = {
-      {{"ms", absl::Milliseconds(1)}, {"s", absl::Seconds(1)}, {"m", absl::Minutes(1)}, {"h", absl::Hours(1)}, {"d", kDay}}};
-  for (const auto& [word, unit] : kUnits) {
-    if (rest.substr(0, word.size()) != word) continue;
-    rest.remove_prefix(word.size());
-    return unit;
-  }
+bool in_number(char c) { return (c >= '0' && c <= '9') || c == '.'; }
+
+// Zero where `unit` is none.
+absl::Duration unit_named(std::string_view unit) {
+  if (unit == "ms") return absl::Milliseconds(1);
+  if (unit == "s") return absl::Seconds(1);
+  if (unit == "m") return absl::Minutes(1);
+  if (unit == "h") return absl::Hours(1);
+  if (unit == "d") return absl::Hours(24);
   return absl::ZeroDuration();
 }
 
-std::string short_number(double value) {
-  std::array<char, 32> text{};
-  std::snprintf(text.data(), text.size(), value < 9.95 ? "%.1f" : "%.0f", value);
-  std::string shown = text.data();
-  if (shown.size() > 2 && shown.substr(shown.size() - 2) == ".0") shown.resize(shown.size() - 2);
-  return shown;
-}
-
-std::string two_units(std::int64_t large, const char* large_unit, std::int64_t small, const char* small_unit) {
-  if (small == 0) return absl::StrCat(large, " ", large_unit);
-  return absl::StrCat(large, " ", large_unit, " ", small, " ", small_unit);
+std::string two_units(std::int64_t seconds) {
+  struct Unit {
+    std::int64_t seconds;
+    const char* name;
+  };
+  constexpr std::array<Unit, 4> kUnits = {{{86400, "d"}, {3600, "h"}, {60, "min"}, {1, "s"}}};
+  std::size_t i = 0;
+  while (i + 1 < kUnits.size() && seconds < kUnits[i].seconds) ++i;
+  if (i + 1 == kUnits.size()) return absl::StrCat(seconds, " s");
+  // Rounded to the smaller of the two, which may carry into the larger or into the one above it.
+  const std::int64_t small = kUnits[i + 1].seconds;
+  seconds = (seconds + small / 2) / small * small;
+  if (i > 0 && seconds >= kUnits[i - 1].seconds) --i;
+  std::string text = absl::StrCat(seconds / kUnits[i].seconds, " ", kUnits[i].name);
+  const std::int64_t rest = seconds % kUnits[i].seconds / kUnits[i + 1].seconds;
+  if (rest > 0) absl::StrAppend(&text, " ", rest, " ", kUnits[i + 1].name);
+  return text;
 }
 
 }  // namespace
 
 absl::StatusOr<absl::Duration> parse_duration(std::string_view text) {
-  absl::Duration span = absl::ZeroDuration();
-  if (text.empty()) return malformed(text);
-  for (std::string_view rest = text; !rest.empty();) {
-    double number = 0.0;
-    const char* const end = rest.data() + rest.size();
-    const auto [stop, error] = std::from_chars(rest.data(), end, number, std::chars_format::fixed);
-    if (error != std::errc() || !std::isfinite(number) || std::signbit(number)) return malformed(text);
-    rest.remove_prefix(static_cast<std::size_t>(stop - rest.data()));
-    const absl::Duration unit = take_unit(rest);
-    if (unit == absl::ZeroDuration()) return malformed(text);
-    span += unit * number;
-    if (span > kLongest) return malformed(text);
+  absl::Duration sum = absl::ZeroDuration();
+  std::string_view rest = text;
+  if (rest.empty()) return unreadable(text);
+  while (!rest.empty()) {
+    const auto digits = static_cast<std::size_t>(std::find_if_not(rest.begin(), rest.end(), in_number) - rest.begin());
+    double number = 0;
+    if (digits == 0 || !absl::SimpleAtod({rest.data(), digits}, &number)) return unreadable(text);
+    rest.remove_prefix(digits);
+    const auto letters = static_cast<std::size_t>(std::find_if(rest.begin(), rest.end(), in_number) - rest.begin());
+    const absl::Duration unit = unit_named(rest.substr(0, letters));
+    if (unit == absl::ZeroDuration()) return unreadable(text);
+    rest.remove_prefix(letters);
+    sum += number * unit;
   }
-  return span;
+  if (sum >= absl::Seconds(kMostSeconds)) return unreadable(text);
+  return sum;
 }
 
 google::protobuf::Duration to_proto(absl::Duration span) {
-  span = std::clamp(span, -kLongest, kLongest);
+  span = std::clamp(span, absl::Seconds(-kMostSeconds), absl::Seconds(kMostSeconds));
   google::protobuf::Duration made;
-  made.set_seconds(absl::IDivDuration(span, absl::Seconds(1), &span));
-  made.set_nanos(static_cast<std::int32_t>(absl::IDivDuration(span, absl::Nanoseconds(1), &span)));
+  absl::Duration rest;
+  made.set_seconds(absl::IDivDuration(span, absl::Seconds(1), &rest));
+  made.set_nanos(static_cast<std::int32_t>(absl::ToInt64Nanoseconds(rest)));
   return made;
 }
 
@@ -77,18 +87,14 @@ absl::Duration from_proto(const google::protobuf::Duration& span) {
 }
 
 std::string human(absl::Duration span) {
+  if (span == absl::InfiniteDuration()) return "endless";
   if (span < absl::ZeroDuration()) return absl::StrCat("-", human(-span));
-  if (span == absl::InfiniteDuration()) return "for ever";
-  if (span < absl::Milliseconds(999.5)) {
-    return absl::StrCat(static_cast<std::int64_t>(std::llround(absl::ToDoubleMilliseconds(span))), " ms");
-  }
-  if (span < absl::Seconds(59.5)) return absl::StrCat(short_number(absl::ToDoubleSeconds(span)), " s");
-  const auto seconds = static_cast<std::int64_t>(std::llround(absl::ToDoubleSeconds(span)));
-  if (seconds < 3'600) return two_units(seconds / 60, "min", seconds % 60, "s");
-  const std::int64_t minutes = (seconds + 30) / 60;
-  if (minutes < 24 * 60) return two_units(minutes / 60, "h", minutes % 60, "min");
-  const std::int64_t hours = (minutes + 30) / 60;
-  return two_units(hours / 24, "d", hours % 24, "h");
+  const double seconds = absl::ToDoubleSeconds(span);
+  if (seconds == 0) return "0 s";
+  if (seconds < 0.00995) return absl::StrFormat("%.2g ms", std::max(seconds * 1000, 0.01));
+  if (seconds < 0.9995) return absl::StrFormat("%.0f ms", seconds * 1000);
+  if (seconds < 9.95) return absl::StrFormat("%.2g s", seconds);
+  return two_units(static_cast<std::int64_t>(std::llround(seconds)));
 }
 
 }  // namespace drover::link

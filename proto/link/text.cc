@@ -1,46 +1,45 @@
 #include "link/text.h"
 
-#include <array>
+#include <cstddef>
 #include <cstdint>
-#include <cstdio>
-#include <optional>
+
+#include "absl/strings/str_format.h"
 
 namespace drover::link {
 namespace {
 
-struct Character {
+constexpr std::string_view kReplacement = "\xEF\xBF\xBD";
+
+struct Symbol {
   std::uint32_t code = 0;
-  std::size_t bytes = 0;
+  std::size_t bytes = 0;  // 0: the first byte begins no valid symbol
 };
 
-// The character at the beginning of `text`, by table 3-7 of the Unicode standard: no overlong forms, no surrogates.
-std::optional<Character> decode(std::string_view text) {
-  const auto at = [&](std::size_t i) { return static_cast<std::uint8_t>(text[i]); };
-  const std::uint8_t lead = at(0);
-  if (lead < 0x80) return Character{lead, 1};
-  const std::size_t bytes = lead >= 0xF0 ? 4 : lead >= 0xE0 ? 3 : 2;
-  if (lead < 0xC2 || lead > 0xF4 || text.size() < bytes) return std::nullopt;
-  std::uint32_t code = lead & (0xFFu >> (bytes + 1));
-  for (std::size_t i = 1; i < bytes; ++i) {
-    if ((at(i) & 0xC0) != 0x80) return std::nullopt;
-    code = (code << 6) | (at(i) & 0x3Fu);
+// The Unicode Standard 15.0, table 3-7: which byte sequences are well formed.
+Symbol first_symbol(std::string_view text) {
+  const auto byte = [&](std::size_t i) { return i < text.size() ? static_cast<unsigned char>(text[i]) : 0u; };
+  const auto follows = [&](std::size_t i) { return (byte(i) & 0xC0u) == 0x80u; };
+  const std::uint32_t lead = byte(0);
+  if (lead < 0x80) return {lead, 1};
+  if (lead >= 0xC2 && lead <= 0xDF && follows(1)) return {(lead & 0x1Fu) << 6 | (byte(1) & 0x3Fu), 2};
+  if (lead >= 0xE0 && lead <= 0xEF && follows(1) && follows(2)) {
+    const std::uint32_t code = (lead & 0x0Fu) << 12 | (byte(1) & 0x3Fu) << 6 | (byte(2) & 0x3Fu);
+    if (code >= 0x800 && (code < 0xD800 || code > 0xDFFF)) return {code, 3};
   }
-  constexpr std::array<std::uint32_t, 5> kLeast = {0, 0, 0x80, 0x800, 0x10000};
-  const bool surrogate = code >= 0xD800 && code <= 0xDFFF;
-  if (code < kLeast[bytes] || code > 0x10FFFF || surrogate) return std::nullopt;
-  return Character{code, bytes};
+  if (lead >= 0xF0 && lead <= 0xF4 && follows(1) && follows(2) && follows(3)) {
+    const std::uint32_t code =
+        (lead & 0x07u) << 18 | (byte(1) & 0x3Fu) << 12 | (byte(2) & 0x3Fu) << 6 | (byte(3) & 0x3Fu);
+    if (code >= 0x10000 && code <= 0x10FFFF) return {code, 4};
+  }
+  return {};
 }
 
-bool is_control(std::uint32_t code) {
-  const bool bidirectional = (code >= 0x202A && code <= 0x202E) || (code >= 0x2066 && code <= 0x2069) ||
-                             code == 0x200E || code == 0x200F || code == 0x061C;
-  return code < 0x20 || (code >= 0x7F && code <= 0x9F) || bidirectional;
-}
+bool is_control(std::uint32_t code) { return code < 0x20 || (code >= 0x7F && code <= 0x9F); }
 
-std::string escaped(std::uint32_t code) {
-  std::array<char, 16> text{};
-  std::snprintf(text.data(), text.size(), code < 0x100 ? "\\x%02x" : "\\u{%04x}", code);
-  return text.data();
+// What can reorder a line on a screen or begin a new one.
+bool moves_text(std::uint32_t code) {
+  return code == 0x061C || code == 0x200E || code == 0x200F || (code >= 0x2028 && code <= 0x202E) ||
+         (code >= 0x2066 && code <= 0x2069);
 }
 
 }  // namespace
@@ -49,25 +48,32 @@ std::string clean_utf8(std::string_view bytes) {
   std::string clean;
   clean.reserve(bytes.size());
   while (!bytes.empty()) {
-    const std::optional<Character> character = decode(bytes);
-    if (character) {
-      clean.append(bytes.substr(0, character->bytes));
-    } else {
-      clean.append("\xEF\xBF\xBD");
-    }
-    bytes.remove_prefix(character ? character->bytes : 1);
+    const Symbol symbol = first_symbol(bytes);
+    const std::size_t taken = symbol.bytes == 0 ? 1 : symbol.bytes;
+    clean += symbol.bytes == 0 ? kReplacement : bytes.substr(0, taken);
+    bytes.remove_prefix(taken);
   }
   return clean;
 }
 
 std::string printable(std::string_view bytes, bool keep_lines) {
-  const std::string clean = clean_utf8(bytes);
   std::string shown;
-  for (std::string_view rest = clean; !rest.empty();) {
-    const Character character = *decode(rest);
-    const bool kept = !is_control(character.code) || (keep_lines && (character.code == '\n' || character.code == '\t'));
-    shown.append(kept ? std::string(rest.substr(0, character.bytes)) : escaped(character.code));
-    rest.remove_prefix(character.bytes);
+  shown.reserve(bytes.size());
+  while (!bytes.empty()) {
+    const Symbol symbol = first_symbol(bytes);
+    const std::size_t taken = symbol.bytes == 0 ? 1 : symbol.bytes;
+    if (symbol.bytes == 0) {
+      shown += kReplacement;
+    } else if (keep_lines && symbol.code == '\n') {
+      shown += '\n';
+    } else if (is_control(symbol.code)) {
+      shown += absl::StrFormat("\\x%02x", symbol.code);
+    } else if (moves_text(symbol.code)) {
+      shown += absl::StrFormat("\\u{%04x}", symbol.code);
+    } else {
+      shown += bytes.substr(0, taken);
+    }
+    bytes.remove_prefix(taken);
   }
   return shown;
 }
