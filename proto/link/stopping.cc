@@ -3,8 +3,8 @@
 #include <poll.h>
 #include <pthread.h>
 #include <sys/eventfd.h>
-#include <sys/pidfd.h>
 #include <sys/signalfd.h>
+#include <sys/syscall.h>
 #include <unistd.h>
 
 #include <array>
@@ -82,7 +82,7 @@ class SignalWatch final : public StopWatch {
     end_.reset(eventfd(0, EFD_CLOEXEC));
     if (end_.get() < 0) return errno_status("eventfd");
     if (owner_ > 0) owner_start_ = start_time_of(owner_);
-    if (owner_ > 0) owner_fd_.reset(pidfd_open(owner_, 0));
+    if (owner_ > 0) owner_fd_.reset(static_cast<int>(syscall(SYS_pidfd_open, owner_, 0)));
     thread_ = std::thread([this] { watch(); });
     return absl::OkStatus();
   }

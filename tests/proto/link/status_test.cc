@@ -42,7 +42,7 @@ TEST(Status, HasNoReasonWhereThereAreNoDetails) {
 }
 
 TEST(Status, IsUnknownForACodeThatDoesNotExist) {
-  const absl::Status back = from_grpc(grpc::Status(static_cast<grpc::StatusCode>(99), "new"));
+  const absl::Status back = from_grpc(grpc::Status(static_cast<grpc::StatusCode>(20), "new"));
   EXPECT_EQ(back.code(), absl::StatusCode::kUnknown);
   EXPECT_EQ(back.message(), "new");
 }
