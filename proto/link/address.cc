@@ -37,12 +37,15 @@ absl::StatusOr<Address> parse_unix(std::string_view text) {
   if (path.back() == '/') return wrong(text, "the socket's path ends in a folder");
   if (path.find('\0') != std::string_view::npos) return wrong(text, "a zero byte in the path");
   if (path.size() > kLongestPath) {
-    return wrong(text, absl::StrCat("the path has ", path.size(), " bytes, and a socket's name at most ", kLongestPath));
+    return wrong(text,
+                 absl::StrCat("the path has ", path.size(), " bytes, and a socket's name at most ", kLongestPath));
   }
   return Address{.is_unix = true, .path = std::string(path)};
 }
 
-bool in_host_name(char c) { return absl::ascii_isalnum(static_cast<unsigned char>(c)) || c == '-' || c == '.' || c == '_'; }
+bool in_host_name(char c) {
+  return absl::ascii_isalnum(static_cast<unsigned char>(c)) || c == '-' || c == '.' || c == '_';
+}
 
 absl::Status check_host(std::string_view text, const std::string& host, bool bracketed) {
   in6_addr parsed{};
@@ -76,7 +79,8 @@ absl::StatusOr<Address> parse_tcp(std::string_view text) {
 }
 
 absl::Status bad_folder(const std::string& folder, std::string_view why) {
-  return absl::FailedPreconditionError(absl::StrCat("folder ", printable(folder), " of the socket: ", std::string(why)));
+  return absl::FailedPreconditionError(
+      absl::StrCat("folder ", printable(folder), " of the socket: ", std::string(why)));
 }
 
 }  // namespace
@@ -119,10 +123,12 @@ absl::Status prepare_socket_folder(const Address& address) {
   if (lstat(folder.c_str(), &info) != 0) return bad_folder(folder, std::strerror(errno));
   if (S_ISLNK(info.st_mode)) return bad_folder(folder, "is a symbolic link; name the folder itself");
   if (!S_ISDIR(info.st_mode)) return bad_folder(folder, "is no folder");
-  if (info.st_uid != geteuid()) return bad_folder(folder, absl::StrCat("belongs to user ", info.st_uid, ", not to you"));
+  if (info.st_uid != geteuid())
+    return bad_folder(folder, absl::StrCat("belongs to user ", info.st_uid, ", not to you"));
   if ((info.st_mode & 077) != 0) {
-    return bad_folder(folder, "is open to other users, who could then talk to the coordinator; close it with chmod 700, "
-                              "or name a socket in a folder of its own");
+    return bad_folder(folder,
+                      "is open to other users, who could then talk to the coordinator; close it with chmod 700, "
+                      "or name a socket in a folder of its own");
   }
   return absl::OkStatus();
 }

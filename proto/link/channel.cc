@@ -43,8 +43,8 @@ absl::StatusOr<std::shared_ptr<grpc::Channel>> dial(const Address& address) {
   arguments.SetInt(GRPC_ARG_INITIAL_RECONNECT_BACKOFF_MS, 100);
   arguments.SetInt(GRPC_ARG_MIN_RECONNECT_BACKOFF_MS, 1'000);
   arguments.SetInt(GRPC_ARG_MAX_RECONNECT_BACKOFF_MS, 20'000);
-  arguments.SetInt(GRPC_ARG_ENABLE_RETRIES, 0);                 // ours know the request ids
-  arguments.SetInt(GRPC_ARG_USE_LOCAL_SUBCHANNEL_POOL, 1);      // a new channel does not inherit another's back-off
+  arguments.SetInt(GRPC_ARG_ENABLE_RETRIES, 0);             // ours know the request ids
+  arguments.SetInt(GRPC_ARG_USE_LOCAL_SUBCHANNEL_POOL, 1);  // a new channel does not inherit another's back-off
   arguments.SetInt(GRPC_ARG_MAX_METADATA_SIZE, kLargestAnswerMetadata);
   arguments.SetMaxReceiveMessageSize(kLargestMessage);
   arguments.SetMaxSendMessageSize(kLargestMessage);

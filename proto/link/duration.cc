@@ -16,9 +16,10 @@ namespace {
 constexpr std::int64_t kMostSeconds = 315'576'000'000;  // 10,000 years: what the message may hold
 
 absl::Status unreadable(std::string_view text) {
-  return absl::InvalidArgumentError(absl::StrCat("\"", printable(text),
-                                                 "\" is no span of time; write a number with its unit (ms, s, m, h, d), "
-                                                 "as in 90s, 1h30m or 1.5d"));
+  return absl::InvalidArgumentError(
+      absl::StrCat("\"", printable(text),
+                   "\" is no span of time; write a number with its unit (ms, s, m, h, d), "
+                   "as in 90s, 1h30m or 1.5d"));
 }
 
 bool in_number(char c) { return (c >= '0' && c <= '9') || c == '.'; }

@@ -1,11 +1,11 @@
 #include "link/log.h"
 
+#include <grpc/support/log.h>
+
 #include <cstdlib>
 #include <memory>
 #include <string>
 #include <utility>
-
-#include <grpc/support/log.h>
 
 #include "link/text.h"
 #include "spdlog/pattern_formatter.h"

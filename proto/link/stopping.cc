@@ -102,9 +102,8 @@ class SignalWatch final : public StopWatch {
   void watch() {
     bool watching_owner = owner_ > 0;
     for (;;) {
-      std::array<pollfd, 3> waiting = {{{end_.get(), POLLIN, 0},
-                                        {signals_.get(), POLLIN, 0},
-                                        {watching_owner ? owner_fd_.get() : -1, POLLIN, 0}}};
+      std::array<pollfd, 3> waiting = {
+          {{end_.get(), POLLIN, 0}, {signals_.get(), POLLIN, 0}, {watching_owner ? owner_fd_.get() : -1, POLLIN, 0}}};
       const bool by_hand = watching_owner && (owner_fd_.get() < 0 || owner_start_.empty());
       if (poll(waiting.data(), waiting.size(), by_hand ? kOwnerPollMs : -1) < 0 && errno != EINTR) return;
       if (waiting[0].revents != 0) return;

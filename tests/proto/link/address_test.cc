@@ -118,10 +118,8 @@ TEST(SocketFolder, RefusesWhatOthersCouldReach) {
   std::filesystem::create_directory_symlink(base + "/mine", base + "/link");
   std::ofstream(base + "/file") << "x";
   const std::vector<std::pair<std::string, std::string>> rows = {
-      {"/open/a.sock", "open to other users"},
-      {"/link/a.sock", "symbolic link"},
-      {"/link//a.sock", "symbolic link"},
-      {"/file/a.sock", "no folder"},
+      {"/open/a.sock", "open to other users"}, {"/link/a.sock", "symbolic link"},
+      {"/link//a.sock", "symbolic link"},      {"/file/a.sock", "no folder"},
       {"/none/none/a.sock", "cannot be made"},
   };
   for (const auto& [path, why] : rows) {

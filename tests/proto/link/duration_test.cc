@@ -11,9 +11,14 @@ namespace {
 
 TEST(ParseDuration, ReadsWhatPeopleWrite) {
   const std::vector<std::pair<std::string, absl::Duration>> rows = {
-      {"90s", absl::Seconds(90)},   {"2h", absl::Hours(2)},           {"1h30m", absl::Minutes(90)},
-      {"1.5d", absl::Hours(36)},    {"250ms", absl::Milliseconds(250)}, {"0s", absl::ZeroDuration()},
-      {"0.1s", absl::Milliseconds(100)}, {"1d2h3m4s5ms", absl::Hours(26) + absl::Minutes(3) + absl::Milliseconds(4005)},
+      {"90s", absl::Seconds(90)},
+      {"2h", absl::Hours(2)},
+      {"1h30m", absl::Minutes(90)},
+      {"1.5d", absl::Hours(36)},
+      {"250ms", absl::Milliseconds(250)},
+      {"0s", absl::ZeroDuration()},
+      {"0.1s", absl::Milliseconds(100)},
+      {"1d2h3m4s5ms", absl::Hours(26) + absl::Minutes(3) + absl::Milliseconds(4005)},
       {"5m5ms", absl::Minutes(5) + absl::Milliseconds(5)},
   };
   for (const auto& [text, span] : rows) {
@@ -24,8 +29,8 @@ TEST(ParseDuration, ReadsWhatPeopleWrite) {
 }
 
 TEST(ParseDuration, RefusesTheRest) {
-  for (const char* text : {"", "5", "s", "-5s", "+5s", "1e3s", "inf", "infs", "nans", "5 s", "1..5s", ".s", "5S", "5min",
-                           "1h30", "5s ", " 5s", "99999999999999d", "5us"}) {
+  for (const char* text : {"", "5", "s", "-5s", "+5s", "1e3s", "inf", "infs", "nans", "5 s", "1..5s", ".s", "5S",
+                           "5min", "1h30", "5s ", " 5s", "99999999999999d", "5us"}) {
     EXPECT_EQ(parse_duration(text).status().code(), absl::StatusCode::kInvalidArgument) << '"' << text << '"';
   }
 }
