@@ -32,7 +32,7 @@ struct Variable {
 // wide and a uniform draw finds each as often.
 class Space {
  public:
-  // INVALID_ARGUMENT: no variables, low >= high (kInteger and kStepped: low > high), a bound that is not finite, a step
+  // INVALID_ARGUMENT: no variables, low >= high (kInteger and kStepped: low > high), a bound that is not finite (or of an integer no whole number), a step
   // of 0 or less, a logarithm of 0 or less, fewer than 1 choice, more than 2^53 levels, a baseline of another size.
   // `baseline` in the user's units; empty: there is none. It is moved into the bounds and onto its step.
   static absl::StatusOr<Space> make(std::vector<Variable> variables, std::vector<double> baseline = {});

@@ -1,0 +1,38 @@
+#include "search/standing.h"
+
+#include <algorithm>
+#include <cmath>
+#include <vector>
+
+#include "absl/strings/str_cat.h"
+
+namespace drover::search {
+namespace {
+
+bool all_finite(const std::vector<double>& numbers) {
+  return std::all_of(numbers.begin(), numbers.end(), [](double number) { return std::isfinite(number); });
+}
+
+}  // namespace
+
+Standing standing_of(const Outcome& outcome) {
+  if (outcome.verdict != Verdict::kEvaluated) return {Rank::kFailed, 0.0, outcome.ask};
+  if (outcome.violation > 0.0) return {Rank::kInfeasible, outcome.violation, outcome.ask};
+  return {Rank::kFeasible, outcome.objectives.front(), outcome.ask};
+}
+
+absl::Status check_outcome(const Outcome& outcome, std::size_t variables) {
+  const auto refuse = [&](const char* why) {
+    return absl::InvalidArgumentError(absl::StrCat("outcome of ask ", outcome.ask, " ", why));
+  };
+  if (outcome.ask < 0) return refuse("has a number below 0");
+  if (outcome.point.size() != variables) return refuse("has another number of coordinates than the space");
+  if (!all_finite(outcome.point)) return refuse("has a coordinate that is not finite");
+  if (outcome.verdict != Verdict::kEvaluated) return absl::OkStatus();
+  if (outcome.objectives.empty()) return refuse("is evaluated and has no objective");
+  if (!all_finite(outcome.objectives)) return refuse("has an objective that is not finite");
+  if (!std::isfinite(outcome.violation) || outcome.violation < 0.0) return refuse("has a violation that is no size");
+  return absl::OkStatus();
+}
+
+}  // namespace drover::search

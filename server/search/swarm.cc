@@ -1,0 +1,68 @@
+#include "search/swarm.h"
+
+#include <algorithm>
+#include <cmath>
+#include <utility>
+
+namespace drover::search {
+
+const Player* Swarm::best() const {
+  const Player* best = nullptr;
+  for (const Player& player : players_) {
+    if (player.placed() && (best == nullptr || player.standing.better_than(best->standing))) best = &player;
+  }
+  return best;
+}
+
+Player* Swarm::worst_idle() {
+  const Player* const best = this->best();
+  Player* worst = nullptr;
+  for (Player& player : players_) {
+    if (!player.idle() || &player == best) continue;
+    // better_than() is false both ways for two that stand nowhere: the first stays.
+    if (worst == nullptr || worst->standing.better_than(player.standing)) worst = &player;
+  }
+  return worst;
+}
+
+Player* Swarm::of_ask(std::int64_t ask) {
+  const auto at = std::find_if(players_.begin(), players_.end(), [&](const Player& player) { return player.out == ask; });
+  return at == players_.end() ? nullptr : &*at;
+}
+
+bool Swarm::all_placed() const {
+  return std::all_of(players_.begin(), players_.end(), [](const Player& player) { return player.placed(); });
+}
+
+Swarm::Box Swarm::box(double share) const {
+  const Player* const centre = best();
+  Box box;
+  if (centre == nullptr) return box;
+  std::vector<std::pair<double, std::size_t>> order;  // distance, index
+  for (std::size_t i = 0; i < players_.size(); ++i) {
+    if (!players_[i].placed()) continue;
+    double distance = 0.0;
+    for (std::size_t j = 0; j < centre->point.size(); ++j) {
+      distance = std::max(distance, std::abs(players_[i].point[j] - centre->point[j]));
+    }
+    order.emplace_back(distance, i);
+  }
+  std::sort(order.begin(), order.end());
+  const auto wanted = static_cast<std::size_t>(std::ceil(share * static_cast<double>(players_.size()) - 1e-9));
+  order.resize(std::min(order.size(), std::max<std::size_t>(1, wanted)));
+  box.low = box.high = centre->point;
+  for (const auto& [distance, i] : order) {
+    for (std::size_t j = 0; j < box.low.size(); ++j) {
+      box.low[j] = std::min(box.low[j], players_[i].point[j]);
+      box.high[j] = std::max(box.high[j], players_[i].point[j]);
+    }
+  }
+  for (std::size_t j = 0; j < box.low.size(); ++j) {
+    if (box.high[j] - box.low[j] <= box.largest_side) continue;
+    box.largest_side = box.high[j] - box.low[j];
+    box.widest = j;
+  }
+  return box;
+}
+
+}  // namespace drover::search
