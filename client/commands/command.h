@@ -38,9 +38,8 @@ struct Context {
   Output& output;
   std::string address;
 
-  absl::StatusOr<std::unique_ptr<Coordinator>> connect() const {
-    return Coordinator::at(address, surroundings.clock, surroundings.interruption);
-  }
+  // Says so once when nobody answers at first.
+  absl::StatusOr<std::unique_ptr<Coordinator>> connect() const;
 };
 
 struct Command {

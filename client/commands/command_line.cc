@@ -39,9 +39,11 @@ std::string help_of(const Command& command, const CLI::App& app) {
   for (const std::string& example : command.examples) absl::StrAppend(&text, "  ", example, "\n");
   if (!command.details.empty()) absl::StrAppend(&text, "\n", command.details, "\n");
   // CLI11 begins with the description, which stands above already.
-  std::string options = app.help();
-  const std::size_t usage = options.find("Usage:");
-  return absl::StrCat(text, "\n", usage == std::string::npos ? options : options.substr(usage));
+  constexpr char kUsage[] = "Usage: ";
+  const std::string options = app.help();
+  const std::size_t usage = options.find(kUsage);
+  if (usage == std::string::npos) return absl::StrCat(text, "\n", options);
+  return absl::StrCat(text, "\n", kUsage, "drover ", options.substr(usage + sizeof kUsage - 1));
 }
 
 // "unknown command "shwo"; did you mean "show"?" for what is left over.
@@ -171,6 +173,16 @@ class Line {
 };
 
 }  // namespace
+
+absl::StatusOr<std::unique_ptr<Coordinator>> Context::connect() const {
+  constexpr absl::Duration kPatience = absl::Seconds(3);
+  const auto once = [said = false, this]() mutable {
+    if (!said) output.say(absl::StrCat("drover: no answer yet from ", address, "; trying again for some seconds"));
+    said = true;
+    return absl::OkStatus();
+  };
+  return Coordinator::at(address, surroundings.clock, surroundings.interruption, kPatience, once);
+}
 
 int run(const std::vector<std::string>& arguments, const Surroundings& surroundings) {
   return static_cast<int>(Line(surroundings).run(arguments));

@@ -28,6 +28,8 @@ json to_json(const v1::NamedValue& named) {
   return out;
 }
 
+json to_json(const v1::CellResult& cell);
+
 template <class Messages>
 json list(const Messages& messages) {
   json out = json::array();
