@@ -3,12 +3,14 @@
 #include <google/protobuf/descriptor.h>
 #include <google/protobuf/message.h>
 #include <google/protobuf/text_format.h>
-#include <google/protobuf/util/message_differencer.h>
 
+#include <algorithm>
 #include <set>
 
+#include "absl/strings/ascii.h"
 #include "absl/strings/str_cat.h"
 #include "absl/strings/str_join.h"
+#include "absl/time/time.h"
 
 namespace drover::commands {
 namespace {
@@ -58,6 +60,7 @@ std::string key_of(const Message& parent, const FieldDescriptor& field) {
     const auto& objective = static_cast<const v1::Objective&>(parent);
     return objective.sense() == v1::SENSE_MAXIMISE ? "maximise" : "minimise";
   }
+  if (field.containing_type()->name() == "CodeUse") return "";  // a text in the file, a message here
   if (field.containing_type()->name() != "StudySpec") return name;
   if (name == "variables" || name == "conditions" || name == "objectives" || name == "constraints") {
     return name.substr(0, name.size() - 1);
@@ -71,15 +74,32 @@ bool is_set(const Message& message, const FieldDescriptor& field) {
   return field.is_repeated() ? reflection.FieldSize(message, &field) > 0 : reflection.HasField(message, &field);
 }
 
+// "maximise" for SENSE_MAXIMISE.
+std::string word_of(const google::protobuf::EnumValueDescriptor& value) {
+  std::size_t prefix = 1;  // the '_' behind the type's name, which has one more for each capital within
+  for (const char c : value.type()->name()) prefix += absl::ascii_isupper(static_cast<unsigned char>(c)) ? 2 : 1;
+  return absl::AsciiStrToLower(value.name().substr(std::min(prefix - 1, value.name().size())));
+}
+
+std::string one_text(const Message& message, const FieldDescriptor& field, int index) {
+  const Reflection& reflection = *message.GetReflection();
+  if (field.cpp_type() == FieldDescriptor::CPPTYPE_ENUM) return word_of(*reflection.GetEnum(message, &field));
+  if (field.cpp_type() == FieldDescriptor::CPPTYPE_MESSAGE) {
+    const auto& stamp = static_cast<const google::protobuf::Timestamp&>(reflection.GetMessage(message, &field));
+    const absl::Time time = absl::FromUnixSeconds(stamp.seconds()) + absl::Nanoseconds(stamp.nanos());
+    return absl::FormatTime("%Y-%m-%d%ET%H:%M:%E*SZ", time, absl::UTCTimeZone());
+  }
+  std::string value;
+  google::protobuf::TextFormat::PrintFieldValueToString(message, &field, index, &value);
+  return value;
+}
+
 // A single value or a list of values.
 std::string text_of(const Message& message, const FieldDescriptor& field) {
-  const Reflection& reflection = *message.GetReflection();
+  if (!field.is_repeated()) return one_text(message, field, -1);
   std::vector<std::string> values;
-  const int count = field.is_repeated() ? reflection.FieldSize(message, &field) : 1;
-  for (int i = 0; i < count; ++i) {
-    std::string value;
-    google::protobuf::TextFormat::PrintFieldValueToString(message, &field, field.is_repeated() ? i : -1, &value);
-    values.push_back(std::move(value));
+  for (int i = 0; i < message.GetReflection()->FieldSize(message, &field); ++i) {
+    values.push_back(one_text(message, field, i));
   }
   return absl::StrJoin(values, ", ");
 }
@@ -95,7 +115,7 @@ class Comparison {
       const bool open = !is_set(written, field) && may_be_filled(field);
       if (open || (!is_set(written, field) && !is_set(stored, field))) continue;
       const std::string key = key_of(written, field);
-      const std::string here = path.empty() ? key : absl::StrCat(path, ".", key);
+      const std::string here = absl::StrCat(path, path.empty() || key.empty() ? "" : ".", key);
       const bool tables =
           field.cpp_type() == FieldDescriptor::CPPTYPE_MESSAGE && field.message_type()->name() != "Timestamp";
       tables ? compare_tables(here, field, written, stored) : compare_values(here, field, written, stored);

@@ -48,13 +48,13 @@ TEST(ChangedSpec, FindsEveryFieldThatTheAuthorChanged) {
   written.mutable_search()->set_seed(8);
   written.mutable_budget()->mutable_deadline()->set_seconds(5);
   EXPECT_EQ(changes(written),
-            "study.code.code: \"c\" -> \"d\"\n"
+            "study.code: \"c\" -> \"d\"\n"
             "variable[0].low:  -> 0.5\n"
             "condition[0].values: 1, 2 -> 1, 3\n"
-            "objective[0].maximise: SENSE_MINIMISE -> SENSE_MAXIMISE\n"
+            "objective[0].maximise: minimise -> maximise\n"
             "constraint[0].allowance:  -> 0.1\n"
             "search.seed: 7 -> 8\n"
-            "budget.deadline:  -> seconds: 5\n");
+            "budget.deadline:  -> 1970-01-01T00:00:05Z\n");
 }
 
 TEST(ChangedSpec, FindsWhatTheAuthorTookAway) {
