@@ -70,7 +70,7 @@ absl::StatusOr<std::unique_ptr<State>> State::load(store::Store& store, const di
   state->next_session = numbers.session + 1;
   DROVER_ASSIGN(const std::vector<v1::CodeDefinition> codes, store.codes());
   for (const v1::CodeDefinition& code : codes) state->add_code(code);
-  DROVER_ASSIGN(std::map<std::string, std::int32_t> pools, store.licence_pools());
+  DROVER_ASSIGN(auto pools, store.licence_pools());
   state->book.set_licences(std::move(pools));
   DROVER_ASSIGN(const std::vector<study::SessionOpened> sessions, store.sessions());
   for (const study::SessionOpened& opened : sessions) state->book.add_session(session_of(opened, now));

@@ -16,6 +16,7 @@
 #include "absl/time/time.h"
 #include "dispatch/book.h"
 #include "drover/v1/code.pb.h"
+#include "drover/v1/work.pb.h"
 #include "store/store.h"
 #include "study/asking.h"
 #include "study/events.pb.h"
