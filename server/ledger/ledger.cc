@@ -33,9 +33,8 @@ absl::Status Ledger::recover() {
   term.mutable_term_begun()->set_version(options_.version);
   DROVER_TRY(turn.emit(0, std::move(term)).status());
   study::Event pools;
-  for (const auto& [name, count] : options_.licences) {
-    (*pools.mutable_licence_pools_set()->mutable_counts())[name] = count;
-  }
+  auto& counts = *pools.mutable_licence_pools_set()->mutable_counts();
+  for (const auto& [name, count] : options_.licences) counts[name] = count;
   DROVER_TRY(turn.emit(0, std::move(pools)).status());
   DROVER_TRY(store_->commit());
   state_->book.start(now_.steady);
