@@ -148,6 +148,19 @@ TEST(StudyFile, ReadsTheExampleOfThePenstock) {
   EXPECT_EQ(file->spec.budget().runs(), 400);
 }
 
+TEST(StudyFile, ReadsTheExamplesOfItsReference) {
+  std::ifstream in(DROVER_SOURCE "/docs/study-file.md");
+  const std::string page((std::istreambuf_iterator<char>(in)), {});
+  const std::string open = "```toml\n", close = "\n```";
+  int count = 0;
+  for (std::size_t at = page.find(open); at != std::string::npos; at = page.find(open, at)) {
+    at += open.size();
+    EXPECT_EQ(all_lines(parse_study_file(page.substr(at, page.find(close, at) - at), "docs")), "");
+    ++count;
+  }
+  EXPECT_GE(count, 1);
+}
+
 TEST(StudyFile, SaysWhyAFileCannotBeRead) {
   std::string folder = testing::TempDir() + "/studyfileXXXXXX";
   ASSERT_NE(mkdtemp(folder.data()), nullptr);
