@@ -17,21 +17,31 @@ namespace {
 constexpr absl::Duration kFirstWait = absl::Milliseconds(50);
 constexpr absl::Duration kLongestWait = absl::Seconds(1);
 
+// gRPC's chain of reasons ends with the one that says something: "...: No such file or directory)".
+std::string last_reason(const absl::Status& status) {
+  std::string text(status.message());
+  const std::size_t at = text.rfind(": ");
+  if (at != std::string::npos) text.erase(0, at + 2);
+  while (!text.empty() && text.back() == ')') text.pop_back();
+  return text;
+}
+
 // Says where nobody answered.
 absl::Status explained(const absl::Status& status, const std::string& address) {
   const bool nobody = absl::IsUnavailable(status) || absl::IsDeadlineExceeded(status);
   if (!nobody) return status;
   return absl::Status(status.code(),
-                      absl::StrCat("no coordinator answers at ", address, " (", status.message(),
+                      absl::StrCat("no coordinator answers at ", address, " (", last_reason(status),
                                    "); start one with: drover-coordinator serve, or name another with --coordinator"));
 }
 
 }  // namespace
 
-Coordinator::Coordinator(std::string address, std::unique_ptr<v1::Studies::Stub> stub, const link::Clock& clock,
+Coordinator::Coordinator(std::string address, std::shared_ptr<grpc::Channel> channel, const link::Clock& clock,
                          const Interruption& interruption, absl::Duration patience, Meanwhile meanwhile)
     : address_(std::move(address)),
-      stub_(std::move(stub)),
+      channel_(std::move(channel)),
+      stub_(v1::Studies::NewStub(channel_)),
       clock_(clock),
       interruption_(interruption),
       patience_(patience),
@@ -43,7 +53,16 @@ absl::StatusOr<std::unique_ptr<Coordinator>> Coordinator::at(const std::string& 
   DROVER_ASSIGN(const link::Address parsed, link::Address::parse(address));
   DROVER_ASSIGN(const std::shared_ptr<grpc::Channel> channel, link::dial(parsed));
   return std::unique_ptr<Coordinator>(
-      new Coordinator(address, v1::Studies::NewStub(channel), clock, interruption, patience, std::move(meanwhile)));
+      new Coordinator(address, channel, clock, interruption, patience, std::move(meanwhile)));
+}
+
+bool Coordinator::pause_for(absl::Duration span) {
+  if (channel_->GetState(false) == GRPC_CHANNEL_READY) return interruption_.wait(span);
+  // Not a plain sleep: gRPC moves a connection forward only while somebody waits in it, and a handshake that nobody
+  // reads runs into its time limit.
+  const gpr_timespec wait = gpr_time_from_nanos(absl::ToInt64Nanoseconds(span), GPR_TIMESPAN);
+  channel_->WaitForConnected(gpr_time_add(gpr_now(GPR_CLOCK_MONOTONIC), wait));
+  return interruption_.happened();
 }
 
 template <class Request, class Response>
@@ -59,7 +78,7 @@ absl::StatusOr<Response> Coordinator::call(Method<Request, Response> method, con
     if (status.ok()) return response;
     const absl::Duration wait = backoff.next();
     const bool again = link::worth_repeating(status) && clock_.steady() + wait < end;
-    if (!again || interruption_.wait(wait)) return explained(status, address_);
+    if (!again || pause_for(wait)) return explained(status, address_);
     if (meanwhile_ != nullptr) DROVER_TRY(meanwhile_());
   }
 }

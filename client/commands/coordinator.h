@@ -46,8 +46,10 @@ class Coordinator {
   absl::StatusOr<v1::Coordinator> about();
 
  private:
-  Coordinator(std::string address, std::unique_ptr<v1::Studies::Stub> stub, const link::Clock& clock,
+  Coordinator(std::string address, std::shared_ptr<grpc::Channel> channel, const link::Clock& clock,
               const Interruption& interruption, absl::Duration patience, Meanwhile meanwhile);
+  // Until `span` is over or, where there is no connection, there is one. True when interrupted.
+  bool pause_for(absl::Duration span);
 
   template <class Request, class Response>
   using Method = grpc::Status (v1::Studies::Stub::*)(grpc::ClientContext*, const Request&, Response*);
@@ -57,6 +59,7 @@ class Coordinator {
   absl::StatusOr<v1::Study> change(Method<Request, v1::Study> method, const std::string& study);
 
   std::string address_;
+  std::shared_ptr<grpc::Channel> channel_;  // gRPC shares channels
   std::unique_ptr<v1::Studies::Stub> stub_;
   const link::Clock& clock_;
   const Interruption& interruption_;
