@@ -13,9 +13,9 @@
 namespace drover::process {
 
 // Names of the files. order, report and receipt are the session's; the others the runner's.
-inline constexpr char kOrder[] = "order", kReport[] = "report", kReceipt[] = "receipt", kBegun[] = "begun",
-                      kEnded[] = "ended", kStop[] = "stop", kWatch[] = "watch", kAlive[] = "alive",
-                      kStdout[] = "stdout", kStderr[] = "stderr", kRunnerLog[] = "runner.log";
+inline constexpr char kOrderFile[] = "order", kReportFile[] = "report", kReceiptFile[] = "receipt", kBegunFile[] = "begun",
+                      kEndedFile[] = "ended", kStopFile[] = "stop", kWatchFile[] = "watch", kAliveFile[] = "alive",
+                      kStdoutFile[] = "stdout", kStderrFile[] = "stderr", kRunnerLogFile[] = "runner.log";
 
 // Written before the simulation's first instruction.
 struct Begun {
