@@ -51,7 +51,7 @@ PrivateSite::PrivateSite(const SiteOptions& options, const DataFolder& folder, c
       worker_daemon_("the worker", worker_call(options, folder, address_), link::random_number()),
       clock_(clock),
       interruption_(interruption),
-      output_(output) {}
+      tell_([&output](const std::string& text) { output.say(text); }) {}
 
 absl::StatusOr<std::unique_ptr<PrivateSite>> PrivateSite::start(const SiteOptions& options, const DataFolder& folder,
                                                                 const link::Clock& clock,
@@ -72,7 +72,7 @@ absl::Status PrivateSite::tend() {
     const absl::Status status = daemon->tend(clock_.steady());
     const std::string news = daemon->take_news();
     DROVER_TRY(status);
-    if (!news.empty()) output_.say(news);
+    if (!news.empty()) tell_(news);
   }
   return absl::OkStatus();
 }

@@ -1,8 +1,10 @@
 // A coordinator and a worker for one user on one machine: the same programs, started and kept running by this one.
 #pragma once
 
+#include <functional>
 #include <memory>
 #include <string>
+#include <utility>
 
 #include "absl/status/statusor.h"
 #include "commands/coordinator.h"
@@ -29,8 +31,12 @@ class PrivateSite {
                                                             const link::Clock& clock, const Interruption& interruption,
                                                             Output& output);
 
-  // Keeps both daemons running, and says when one had to be started again. ABORTED when one will not run.
+  // Keeps both daemons running, and tells when one had to be started again. ABORTED when one will not run.
   absl::Status tend();
+
+  // Whom tend() tells; at first the output's messages.
+  using Tell = std::function<void(const std::string&)>;
+  void set_tell(Tell tell) { tell_ = std::move(tell); }
 
   // The calls of this one wait for the daemons, and tend them meanwhile.
   Coordinator& coordinator() { return *coordinator_; }
@@ -50,7 +56,7 @@ class PrivateSite {
   Daemon coordinator_daemon_, worker_daemon_;
   const link::Clock& clock_;
   const Interruption& interruption_;
-  Output& output_;
+  Tell tell_;
   std::unique_ptr<Coordinator> coordinator_;
 };
 

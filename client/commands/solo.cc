@@ -10,7 +10,15 @@
 namespace drover::commands {
 namespace {
 
+std::string again(const SoloOptions& options) {
+  std::string command = "drover solo " + options.file;
+  if (!options.codes.empty()) command += " --codes " + options.codes;
+  if (!options.data.empty()) command += " --data " + options.data;
+  return command;
+}
+
 Exit solo(Context& context, SoloOptions options) {
+  options.command = again(options);
   const auto file = studyfile::read_study_file(options.file);
   if (!file.ok()) return unreadable(context.output, file.status());
   if (!file->complaints.empty()) return context.output.complain(file->complaints);

@@ -3,6 +3,7 @@
 #include <utility>
 #include <vector>
 
+#include "absl/cleanup/cleanup.h"
 #include "absl/strings/str_cat.h"
 #include "commands/changed_spec.h"
 #include "commands/describe.h"
@@ -63,7 +64,7 @@ Exit SoloRun::run() {
                          **folder, context_.surroundings.clock, interruption_, output_);
   if (!site.ok()) return gone(site.status());
   const absl::StatusOr<Exit> exit = search(**site, **folder);
-  const bool stopped = interruption_.happened();
+  const bool stopped = !exit.ok() && interruption_.happened();
   if (stopped) output_.say("stopping; a second Ctrl-C ends at once");
   (*site)->end();
   if (stopped) return interrupted(**folder);
@@ -122,9 +123,14 @@ absl::StatusOr<v1::Study> SoloRun::carry_on(PrivateSite& site, v1::Study study, 
 }
 
 absl::StatusOr<v1::Study> SoloRun::follow(PrivateSite& site, v1::Study study) {
-  const link::Clock& clock = context_.surroundings.clock;
   screen::LiveLine line(output_.messages(), output_.message_screen(), screen::width_of(fileno(output_.messages())));
+  site.set_tell([&line](const std::string& text) { line.print(text); });
+  const absl::Cleanup back = [this, &site] { site.set_tell([this](const std::string& text) { output_.say(text); }); };
+  const link::Clock& clock = context_.surroundings.clock;
+  std::string told;
   while (!is_over(study.state())) {
+    // Why nothing goes on, where that can be said.
+    if (study.slots() == 0 && study.sentence() != told) line.print(link::printable(told = study.sentence()));
     line.show(screen::progress_line(study, clock.wall()), clock.steady());
     if (interruption_.wait(kCalm)) return absl::CancelledError("interrupted");
     DROVER_TRY(site.tend());
@@ -135,7 +141,7 @@ absl::StatusOr<v1::Study> SoloRun::follow(PrivateSite& site, v1::Study study) {
 
 Exit SoloRun::interrupted(const DataFolder& folder) {
   output_.say(absl::StrCat("stopped; nothing that was finished is lost, it is in ", folder.path(),
-                           "\nto carry on, give the same command again: drover solo ", options_.file));
+                           "\nto carry on, give the same command again: ", options_.command));
   return Exit::kNo;
 }
 

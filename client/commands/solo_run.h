@@ -17,6 +17,7 @@ struct SoloOptions {
   std::string codes;  // folder
   std::string data;   // folder
   int slots = 1;
+  std::string command;  // what a person gives again to carry on
 };
 
 class SoloRun {
