@@ -23,6 +23,9 @@ using google::protobuf::Reflection;
 v1::StudySpec with_defaults(v1::StudySpec spec) {
   if (spec.replicates() == 0) spec.set_replicates(1);
   if (spec.late() == v1::LATE_REPORTS_UNSPECIFIED) spec.set_late(v1::LATE_REPORTS_ACCEPT);
+  for (v1::CodeUse& use : *spec.mutable_codes()) {
+    if (use.role() == v1::CODE_ROLE_UNSPECIFIED) use.set_role(v1::CODE_ROLE_FINE);
+  }
   for (v1::Variable& variable : *spec.mutable_variables()) {
     if (variable.kind() == v1::VARIABLE_KIND_UNSPECIFIED) variable.set_kind(v1::VARIABLE_KIND_REAL);
     if (variable.scale() == v1::SCALE_UNSPECIFIED) variable.set_scale(v1::SCALE_LINEAR);

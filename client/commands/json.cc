@@ -139,4 +139,8 @@ json error_json(const absl::Status& status, const std::string& nearest) {
   return out;
 }
 
+std::string text_of(const json& document, int indent) {
+  return document.dump(indent, ' ', false, json::error_handler_t::replace);
+}
+
 }  // namespace drover::commands

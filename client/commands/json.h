@@ -21,4 +21,7 @@ nlohmann::json to_json(const v1::Worker& worker);
 nlohmann::json to_json(const studyfile::Complaint& complaint);
 nlohmann::json error_json(const absl::Status& status, const std::string& nearest);
 
+// On one line, or indented. Never throws: what is no UTF-8 is replaced.
+std::string text_of(const nlohmann::json& document, int indent = -1);
+
 }  // namespace drover::commands

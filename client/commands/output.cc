@@ -33,7 +33,7 @@ void Output::data(std::string_view text) {
 }
 
 void Output::document(const nlohmann::json& document) {
-  data(document.dump(-1, ' ', false, nlohmann::json::error_handler_t::replace) + "\n");
+  data(text_of(document) + "\n");
   errno = 0;
   if (!closed_ && std::fflush(data_) != 0) check_write();
 }

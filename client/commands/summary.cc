@@ -68,7 +68,7 @@ absl::StatusOr<Exit> summarise(Coordinator& coordinator, const v1::Study& study,
   DROVER_ASSIGN(const Result result, fetch(coordinator, study));
   nlohmann::json document = document_of(study, result);
   DROVER_TRY(write_table(coordinator, study, table));
-  DROVER_TRY(write_file(best, document.dump(2, ' ', false, nlohmann::json::error_handler_t::replace) + "\n"));
+  DROVER_TRY(write_file(best, text_of(document, 2) + "\n"));
   document["table"] = table;
   document["data"] = folder.path();
   output.json() ? output.document(document) : output.data(text_of(study, result));

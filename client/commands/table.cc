@@ -34,7 +34,7 @@ Exit table(Context& context, const Wanted& wanted) {
   std::string text = output.json() ? "" : csv_head(*study);
   const absl::Status status = (*coordinator)->candidates(wanted.study, [&](const v1::Candidate& candidate) {
     ++count;
-    text += output.json() ? to_json(candidate).dump() + "\n" : csv_line(*study, candidate);
+    text += output.json() ? text_of(to_json(candidate)) + "\n" : csv_line(*study, candidate);
     if (!wanted.file.empty()) return true;
     output.data(text);
     text.clear();

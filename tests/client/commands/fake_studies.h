@@ -7,6 +7,7 @@
 #include <functional>
 #include <memory>
 #include <mutex>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -42,6 +43,8 @@ class FakeStudies final : public v1::Studies::Service {
   std::vector<v1::Run> runs;
   v1::CheckStudyResponse check_answer;
   grpc::Status start_error = grpc::Status::OK;
+  std::optional<v1::Study> once_started;  // what a study is found as after its start
+  v1::StudyState resumed_to = v1::STUDY_STATE_ACTIVE;
   int failures_first = 0;  // that many changing calls fail with UNAVAILABLE after they were seen
 
   std::vector<std::string> request_ids() {
@@ -67,6 +70,13 @@ class FakeStudies final : public v1::Studies::Service {
     study->set_owner(request->owner());
     study->set_state(v1::STUDY_STATE_ACTIVE);
     *study->mutable_spec() = request->spec();
+    if (once_started.has_value()) studies.push_back(*once_started);
+    return grpc::Status::OK;
+  }
+
+  grpc::Status ListWorkers(grpc::ServerContext*, const v1::ListWorkersRequest*,
+                           v1::ListWorkersResponse* answer) override {
+    answer->add_workers()->set_name("a");
     return grpc::Status::OK;
   }
 
@@ -106,7 +116,7 @@ class FakeStudies final : public v1::Studies::Service {
     return change(*request, v1::STUDY_STATE_PAUSED, study);
   }
   grpc::Status ResumeStudy(grpc::ServerContext*, const v1::ResumeStudyRequest* request, v1::Study* study) override {
-    return change(*request, v1::STUDY_STATE_ACTIVE, study);
+    return change(*request, resumed_to, study);
   }
   grpc::Status StopStudy(grpc::ServerContext*, const v1::StopStudyRequest* request, v1::Study* study) override {
     return change(*request, v1::STUDY_STATE_STOPPING, study);
@@ -160,9 +170,10 @@ class FakeCoordinator {
  public:
   FakeCoordinator() = default;
   ~FakeCoordinator() { stop(); }
-  void serve() {
+  void serve() { serve_at(address()); }
+  void serve_at(const std::string& where) {
     grpc::ServerBuilder builder;
-    builder.AddListeningPort(address(), grpc::InsecureServerCredentials());
+    builder.AddListeningPort(where, grpc::InsecureServerCredentials());
     builder.RegisterService(&studies);
     server_ = builder.BuildAndStart();
     ASSERT_NE(server_, nullptr);
