@@ -1,10 +1,12 @@
 #include "search/leapfrogging.h"
 
 #include <algorithm>
+#include <iterator>
 #include <utility>
 
 #include "absl/strings/str_cat.h"
 #include "absl/strings/str_format.h"
+#include "search/amended.h"
 #include "search/random.h"
 
 namespace drover::search {
@@ -12,6 +14,7 @@ namespace {
 
 constexpr int kPlayersPerVariable = 10;
 constexpr int kLeastPlayers = 4;
+constexpr int kPatience = 10;  // of a discrete swarm, in populations
 constexpr double kTolerance = 1e-3;
 constexpr double kShare = 1.0;
 
@@ -32,9 +35,11 @@ std::uint32_t draw_index(const Space& space, int attempt, std::size_t variable) 
 }  // namespace
 
 Leapfrogging::Leapfrogging(const Space& space, const Settings& settings)
-    : space_(space), settings_(with_defaults(space, settings)), scatter_(space, settings.seed), visited_(space) {
-  memory_.swarm = Swarm(static_cast<std::size_t>(settings_.population));
-}
+    : space_(space),
+      given_(settings),
+      settings_(with_defaults(space, settings)),
+      scatter_(space, settings.seed),
+      memory_{.swarm = Swarm(static_cast<std::size_t>(settings_.population)), .visited = Visited(space)} {}
 
 std::vector<Ask> Leapfrogging::next(int count, const History&) {
   std::vector<Ask> asks;
@@ -50,16 +55,11 @@ std::optional<Ask> Leapfrogging::ask() {
   Player* const player = memory_.swarm.worst_idle();
   if (player == nullptr) return std::nullopt;
   const bool starts = !player->placed();
-  const std::int64_t scattered_before = memory_.scattered;
   std::optional<Point> point = landing(*player);
-  if (!point) {
-    memory_.scattered = scattered_before;
-    memory_.exhausted = memory_.exhausted || visited_.full();
-    return std::nullopt;
-  }
+  if (!point) return std::nullopt;
   player->out = ++memory_.asked;
   player->landing = *point;
-  visited_.add(*point);
+  memory_.visited.add(*point);
   return Ask{.number = memory_.asked, .point = *std::move(point), .cells = {}, .purpose = starts ? "start" : "leap"};
 }
 
@@ -67,8 +67,8 @@ std::optional<Ask> Leapfrogging::ask() {
 std::optional<Point> Leapfrogging::landing(const Player& player) {
   const Player* const best = memory_.swarm.best();
   const bool scatters = !player.placed() || best == nullptr || best->standing.rank == Rank::kFailed;
-  if (scatters) return scatter_.next(visited_, memory_.scattered);
-  return visited_.fresh([&](int attempt) { return leap(player, *best, memory_.asked + 1, attempt); });
+  if (scatters) return scatter_.next(memory_.visited, memory_.scattered);
+  return memory_.visited.fresh([&](int attempt) { return leap(player, *best, memory_.asked + 1, attempt); });
 }
 
 Point Leapfrogging::leap(const Player& player, const Player& best, std::int64_t number, int attempt) const {
@@ -115,52 +115,62 @@ absl::Status Leapfrogging::learn(const Outcome& outcome) {
   const Point landing = std::exchange(player->landing, {});
   const bool says_nothing = outcome.verdict == Verdict::kWithdrawn || outcome.verdict == Verdict::kBounded ||
                             (outcome.verdict == Verdict::kFailed && outcome.failure == FailureKind::kLimit);
-  if (says_nothing) return absl::OkStatus();
+  if (says_nothing || landing.empty()) return absl::OkStatus();
   player->point = landing;
   player->standing = standing_of(outcome);
   box_.reset();
   return absl::OkStatus();
 }
 
-// A person's design, or one from elsewhere: the worst idle player goes there if that is better than where it stands.
+// A person's design, or one from elsewhere.
 void Leapfrogging::take_foreign(const Outcome& outcome) {
-  if (space_.discrete()) visited_.add(space_.snap(outcome.point));
-  if (outcome.verdict != Verdict::kEvaluated) return;
+  const Point point = space_.snap(outcome.point);
+  memory_.visited.add(point);
+  if (outcome.verdict != Verdict::kEvaluated || memory_.swarm.stands_at(point)) return;
   Standing standing = standing_of(outcome);
   standing.since = memory_.asked;
-  Player* const worst = memory_.swarm.worst_idle();
-  if (worst == nullptr || !worst->placed() || !standing.better_than(worst->standing)) return;
-  worst->point = space_.snap(outcome.point);
-  worst->standing = standing;
+  Player* const player = memory_.swarm.place_for_foreign();
+  if (player == nullptr || !standing.better_than(player->standing)) return;
+  player->point = point;
+  player->standing = standing;
   box_.reset();
 }
 
 absl::Status Leapfrogging::amend(const Space& space) {
-  if (space.size() != space_.size()) return absl::InvalidArgumentError("an amended space has as many variables as before");
-  for (std::size_t i = 0; i < space.size(); ++i) {
-    if (space.variable(i).kind != space_.variable(i).kind || space.variable(i).choices != space_.variable(i).choices) {
-      return absl::InvalidArgumentError(absl::StrCat("variable ", i + 1, " would become another kind"));
-    }
-  }
+  if (const absl::Status sound = check_amendment(space_, space); !sound.ok()) return sound;
   for (Player& player : memory_.swarm.players()) {
-    if (player.placed()) player.point = space.from_user(space_.to_user(player.point));
-    if (!player.idle()) player.landing = space.from_user(space_.to_user(player.landing));
+    if (!player.idle() && !player.landing.empty()) {
+      player.landing = point_in(space, space_, player.landing).value_or(Point());
+    }
+    if (!player.placed()) continue;
+    const std::optional<Point> place = point_in(space, space_, player.point);
+    player.point = place.value_or(Point());
+    if (!place) player.standing = {};
   }
+  memory_.visited = memory_.visited.in(space);
   space_ = space;
   scatter_ = Scatter(space, settings_.seed);
-  visited_ = Visited(space);  // levels have other numbers; a design may be asked for once more
-  memory_.exhausted = false;
   box_.reset();
   return absl::OkStatus();
 }
 
-bool Leapfrogging::converged() const {
-  if (memory_.exhausted) return true;
-  if (!memory_.swarm.all_placed()) return false;
+const Swarm::Box& Leapfrogging::box() const {
   if (!box_) box_ = memory_.swarm.box(settings_.share);
+  return *box_;
+}
+
+bool Leapfrogging::stale() const {
   const Player* const best = memory_.swarm.best();
+  const std::int64_t patience = std::int64_t{kPatience} * population();
+  return space_.discrete() && memory_.swarm.all_placed() && best->standing.rank != Rank::kFailed &&
+         memory_.asked - best->standing.since > patience;
+}
+
+bool Leapfrogging::converged() const {
+  if (memory_.visited.full() || stale()) return true;
+  if (!memory_.swarm.all_placed()) return false;
   // Failures alone are no swarm to close in: there is nothing in its middle.
-  return best->standing.rank != Rank::kFailed && box_->largest_side < settings_.tolerance;
+  return memory_.swarm.best()->standing.rank != Rank::kFailed && box().largest_side < settings_.tolerance;
 }
 
 Progress Leapfrogging::progress() const {
@@ -175,25 +185,36 @@ Progress Leapfrogging::progress() const {
     progress.swarm_low = whole.low;
     progress.swarm_high = whole.high;
   }
-  progress.sentence = sentence(progress.converged);
+  progress.sentence = sentence();
   return progress;
 }
 
-std::string Leapfrogging::sentence(bool done) const {
+std::string Leapfrogging::sentence() const {
   const auto& players = memory_.swarm.players();
-  const auto placed = std::count_if(players.begin(), players.end(), [](const Player& player) { return player.placed(); });
   const Player* const best = memory_.swarm.best();
-  const bool feasible = best != nullptr && best->standing.rank == Rank::kFeasible;
-  const std::string found = feasible ? "" : "; no feasible design so far";
-  if (memory_.exhausted) return absl::StrCat("all ", space_.count(), " designs have been asked for", found);
-  if (placed < static_cast<std::ptrdiff_t>(players.size())) {
-    return absl::StrCat("spreading out: ", placed, " of ", players.size(), " players stand on their first place", found);
+  const auto count = [&](auto what) { return std::count_if(players.begin(), players.end(), what); };
+  const auto placed = count([](const Player& player) { return player.placed(); });
+  const auto ready = count([&](const Player& player) { return player.idle() && &player != best; });
+  const auto out = count([](const Player& player) { return !player.idle(); });
+  std::string end = best != nullptr && best->standing.rank == Rank::kFeasible ? "" : "; no feasible design so far";
+  if (memory_.visited.full()) return absl::StrCat("all ", space_.count(), " designs have been tried", end);
+  if (ready == 0 && out > 0) absl::StrAppend(&end, "; waiting for ", out, " outcomes");
+  if (placed < std::ssize(players)) {
+    return absl::StrCat("spreading out: ", placed, " of ", players.size(), " players stand on their first place", end);
   }
-  if (best->standing.rank == Rank::kFailed) return "every design failed so far; spreading out further";
-  if (!box_) box_ = memory_.swarm.box(settings_.share);
-  const std::string size = absl::StrFormat("%.2g of the range, in variable %d", box_->largest_side, box_->widest + 1);
-  if (done) return absl::StrFormat("converged: the swarm's largest side is %s (below %g)%s", size, settings_.tolerance, found);
-  return absl::StrFormat("leaping: the swarm's largest side is %s; converged below %g%s", size, settings_.tolerance, found);
+  if (best->standing.rank == Rank::kFailed) {
+    return absl::StrCat("every design failed so far; spreading out further", end);
+  }
+  if (stale()) {
+    return absl::StrCat("converged: nothing better in the last ", memory_.asked - best->standing.since, " designs",
+                        end);
+  }
+  const std::string size = absl::StrFormat("%.2g of the range, in variable %d", box().largest_side, box().widest + 1);
+  if (converged()) {
+    return absl::StrFormat("converged: the swarm's largest side is %s (below %g)%s", size, settings_.tolerance, end);
+  }
+  return absl::StrFormat("leaping: the swarm's largest side is %s; converged below %g%s", size, settings_.tolerance,
+                         end);
 }
 
 }  // namespace drover::search

@@ -30,7 +30,7 @@ struct Ask {
   std::int64_t number = 0;  // 1, 2, 3... in the order of asking
   Point point;              // on the space: inside [0, 1], discrete coordinates on a level
   std::vector<Cell> cells;
-  std::string purpose;      // why it is asked, one or two words, for people: "start", "leap"
+  std::string purpose;  // why it is asked, one or two words, for people: "start", "leap"
 };
 
 // What became of a candidate. Everything is minimised.

@@ -28,7 +28,8 @@ absl::Status check(const Settings& settings) {
   if (!(settings.tolerance >= 0.0 && settings.tolerance < 1.0)) {
     return absl::InvalidArgumentError("tolerance is no share of the range below 1");
   }
-  if (!(settings.share >= 0.0 && settings.share <= 1.0)) return absl::InvalidArgumentError("share is not between 0 and 1");
+  if (!(settings.share >= 0.0 && settings.share <= 1.0))
+    return absl::InvalidArgumentError("share is not between 0 and 1");
   return absl::OkStatus();
 }
 

@@ -22,14 +22,14 @@ constexpr Words philox(Words counter, std::array<std::uint32_t, 2> key) {
 }
 
 // What a draw is for. Values are part of every study's result: never change or reuse one.
-enum class Purpose : std::uint32_t { kScramble = 1, kLeap = 2, kCategory = 3, kRedraw = 4 };
+enum class Purpose : std::uint32_t { kScramble = 1, kLeap = 2, kCategory = 3 };
 
 // 64 random bits of draw `index` for ask `number`.
 constexpr std::uint64_t draw_bits(std::uint64_t seed, std::int64_t number, Purpose purpose, std::uint32_t index) {
   const auto n = static_cast<std::uint64_t>(number);
-  const Words words = philox({static_cast<std::uint32_t>(n), static_cast<std::uint32_t>(n >> 32),
-                              static_cast<std::uint32_t>(purpose), index},
-                             {static_cast<std::uint32_t>(seed), static_cast<std::uint32_t>(seed >> 32)});
+  const Words words = philox(
+      {static_cast<std::uint32_t>(n), static_cast<std::uint32_t>(n >> 32), static_cast<std::uint32_t>(purpose), index},
+      {static_cast<std::uint32_t>(seed), static_cast<std::uint32_t>(seed >> 32)});
   return (static_cast<std::uint64_t>(words[1]) << 32) | words[0];
 }
 

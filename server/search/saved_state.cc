@@ -98,7 +98,8 @@ absl::StatusOr<Point> point_from(const std::string& bytes, std::size_t size) {
       bits |= static_cast<std::uint64_t>(static_cast<unsigned char>(bytes[i * 8 + byte])) << (8 * byte);
     }
     point[i] = std::bit_cast<double>(bits);
-    if (!std::isfinite(point[i])) return absl::DataLossError("the saved state of the search has a number that is not finite");
+    if (!std::isfinite(point[i]))
+      return absl::DataLossError("the saved state of the search has a number that is not finite");
   }
   return point;
 }

@@ -13,7 +13,7 @@
 
 namespace drover::search {
 
-// Equal contents, equal bytes.
+// Equal contents, equal bytes. Of the settings all but `parallel` count, as they were given.
 std::string wrap_state(const Space& space, const Settings& settings, const google::protobuf::MessageLite& content);
 
 // Parses `content` out of the wrapping. INVALID_ARGUMENT: of another method, space or settings, or of a later format;

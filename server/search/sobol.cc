@@ -1,7 +1,6 @@
 #include "search/sobol.h"
 
 #include <algorithm>
-
 #include <boost/random/sobol.hpp>
 
 #include "search/random.h"
@@ -59,13 +58,10 @@ std::uint32_t Sobol::bits(std::uint32_t index, std::size_t dimension) const {
 
 Point Sobol::point(std::uint64_t seed, std::uint32_t index) const {
   Point made(dimensions_);
-  // The order of the points is shuffled by the same scramble, or points 2^k - 1 would share their fate in all dimensions.
-  const auto order_seed = static_cast<std::uint32_t>(draw_bits(seed, 0, Purpose::kScramble, 0));
-  const std::uint32_t shuffled = reversed(owen_scramble(reversed(index), order_seed));
   for (std::size_t d = 0; d < dimensions_; ++d) {
-    const auto hash = static_cast<std::uint32_t>(
-        draw_bits(seed, static_cast<std::int64_t>(d) + 1, Purpose::kScramble, 0));
-    made[d] = static_cast<double>(owen_scramble(bits(shuffled, d), hash)) * 0x1.0p-32;
+    const auto hash =
+        static_cast<std::uint32_t>(draw_bits(seed, static_cast<std::int64_t>(d) + 1, Purpose::kScramble, 0));
+    made[d] = static_cast<double>(owen_scramble(bits(index, d), hash)) * 0x1.0p-32;
   }
   return made;
 }

@@ -14,13 +14,15 @@
 
 namespace drover::search {
 
-// The 32-bit coordinate of point `index` of the plain sequence; point 0 is the origin.
+// Points are numbered in natural order, not in that of a Gray code: each run of 2^k points from a multiple of 2^k on
+// holds the same ones.
 class Sobol {
  public:
   // `dimensions` of 1 or more. Beyond Boost's table (3667) the dimensions of the table come round again, each time with
   // a scramble of its own: still uniform, no longer even across such pairs.
   explicit Sobol(std::size_t dimensions);
 
+  // The 32-bit coordinate of point `index` of the plain sequence; point 0 is the origin.
   std::uint32_t bits(std::uint32_t index, std::size_t dimension) const;
 
   // Point `index` (from 0) of the scrambled sequence, in [0, 1). A function of (seed, index) alone.

@@ -12,13 +12,14 @@
 namespace drover::search {
 namespace {
 
-constexpr double kMostLevels = 9'007'199'254'740'992.0;  // 2^53
+// 2^50: up to here the middle of every level is told from the next one's in double precision, with room to spare.
+constexpr double kMostLevels = 1'125'899'906'842'624.0;
 
 absl::Status bad(std::size_t i, const char* why) {
   return absl::InvalidArgumentError(absl::StrCat("variable ", i + 1, " ", why));
 }
 
-// How many values a discrete variable takes; the last step may fall a rounding short of the upper bound.
+// How many values a discrete variable takes; the last step may fall a few roundings short of the upper bound.
 absl::StatusOr<std::int64_t> levels_of(std::size_t i, const Variable& variable) {
   if (variable.kind == Kind::kChoice) {
     if (variable.choices < 1) return bad(i, "has no choices");
@@ -28,7 +29,8 @@ absl::StatusOr<std::int64_t> levels_of(std::size_t i, const Variable& variable) 
   if (!(step > 0.0) || !std::isfinite(step)) return bad(i, "has a step that is not above 0");
   const double steps = (variable.high - variable.low) / step;
   if (!(steps < kMostLevels)) return bad(i, "has too many levels");
-  return static_cast<std::int64_t>(std::floor(steps * (1.0 + 1e-12) + 1e-9)) + 1;
+  const double rounding = std::min(0.25, 1e-9 + 8.0 * std::numeric_limits<double>::epsilon() * steps);
+  return static_cast<std::int64_t>(std::floor(variable.kind == Kind::kInteger ? steps : steps + rounding)) + 1;
 }
 
 absl::Status check_bounds(std::size_t i, const Variable& variable) {
@@ -37,7 +39,8 @@ absl::Status check_bounds(std::size_t i, const Variable& variable) {
   const bool real = variable.kind == Kind::kReal;
   if (real ? !(variable.low < variable.high) : !(variable.low <= variable.high)) return bad(i, "has low above high");
   if (!std::isfinite(variable.high - variable.low)) return bad(i, "has too wide a range");
-  if (variable.kind == Kind::kInteger && (variable.low != std::floor(variable.low) || variable.high != std::floor(variable.high))) {
+  const bool whole = variable.low == std::floor(variable.low) && variable.high == std::floor(variable.high);
+  if (variable.kind == Kind::kInteger && !whole) {
     return bad(i, "is an integer and has a bound that is none");
   }
   if (variable.scale == Scale::kLog && !(real && variable.low > 0.0)) return bad(i, "has no logarithm");
@@ -120,9 +123,10 @@ double Space::to_user(std::size_t i, double coordinate) const {
   // The ends are exact, whatever the arithmetic between them does.
   if (coordinate <= 0.0) return variable.low;
   if (coordinate >= 1.0) return variable.high;
-  const double value = variable.scale == Scale::kLog
-                           ? std::exp(std::log(variable.low) * (1.0 - coordinate) + std::log(variable.high) * coordinate)
-                           : variable.low + coordinate * (variable.high - variable.low);
+  const double value =
+      variable.scale == Scale::kLog
+          ? std::exp(std::log(variable.low) * (1.0 - coordinate) + std::log(variable.high) * coordinate)
+          : variable.low + coordinate * (variable.high - variable.low);
   return std::clamp(value, variable.low, variable.high);
 }
 
@@ -136,15 +140,15 @@ double Space::from_user(std::size_t i, double value) const {
   const Variable& variable = variables_[i];
   if (levels_[i] > 0) {
     const double low = variable.kind == Kind::kChoice ? 0.0 : variable.low;
-    const double place = variable.kind == Kind::kStepped ? (value - variable.low) / variable.step : value - low;
+    const double place = variable.kind == Kind::kStepped ? (value - low) / variable.step : value - low;
     const double last = static_cast<double>(levels_[i]) - 1.0;
     return at_level(i, static_cast<std::int64_t>(std::clamp(std::round(place), 0.0, last)));
   }
   if (value <= variable.low) return 0.0;
   if (value >= variable.high) return 1.0;
-  const double share = variable.scale == Scale::kLog
-                           ? std::log(value / variable.low) / std::log(variable.high / variable.low)
-                           : (value - variable.low) / (variable.high - variable.low);
+  const double share = variable.scale == Scale::kLog ? (std::log(value) - std::log(variable.low)) /
+                                                           (std::log(variable.high) - std::log(variable.low))
+                                                     : (value - variable.low) / (variable.high - variable.low);
   return std::clamp(share, 0.0, 1.0);
 }
 

@@ -20,9 +20,9 @@ struct Variable {
   Kind kind = Kind::kReal;
   double low = 0.0;  // both ends can be reached; of a choice not used
   double high = 1.0;
-  double step = 0.0;  // kStepped: above 0; values are low, low + step, ... up to high. Else not used.
+  double step = 0.0;             // kStepped: above 0; values are low, low + step, ... up to high. Else not used.
   Scale scale = Scale::kLinear;  // kLog: kReal with low > 0 only
-  int choices = 0;               // kChoice: 2 or more. Else not used.
+  int choices = 0;               // kChoice: 1 or more. Else not used.
 };
 
 // Immutable; safe from several threads.
@@ -32,8 +32,9 @@ struct Variable {
 // wide and a uniform draw finds each as often.
 class Space {
  public:
-  // INVALID_ARGUMENT: no variables, low >= high (kInteger and kStepped: low > high), a bound that is not finite (or of an integer no whole number), a step
-  // of 0 or less, a logarithm of 0 or less, fewer than 1 choice, more than 2^53 levels, a baseline of another size.
+  // INVALID_ARGUMENT: no variables, low >= high (kInteger and kStepped: low > high), a bound that is not finite (or of
+  // an integer no whole number), a step of 0 or less, a logarithm of 0 or less, fewer than 1 choice, 2^50 levels or
+  // more, a baseline of another size or with a number that is not finite.
   // `baseline` in the user's units; empty: there is none. It is moved into the bounds and onto its step.
   static absl::StatusOr<Space> make(std::vector<Variable> variables, std::vector<double> baseline = {});
 

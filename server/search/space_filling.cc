@@ -3,6 +3,7 @@
 #include <utility>
 
 #include "absl/strings/str_cat.h"
+#include "search/amended.h"
 #include "search/saved_state.h"
 #include "search/state/state.pb.h"
 #include "status/try.h"
@@ -10,19 +11,14 @@
 namespace drover::search {
 
 SpaceFilling::SpaceFilling(const Space& space, const Settings& settings)
-    : space_(space), settings_(settings), scatter_(space, settings.seed), visited_(space) {}
+    : space_(space), settings_(settings), scatter_(space, settings.seed), memory_{.visited = Visited(space)} {}
 
 std::vector<Ask> SpaceFilling::next(int count, const History&) {
   std::vector<Ask> asks;
-  while (static_cast<int>(asks.size()) < count && !memory_.exhausted) {
-    const std::int64_t scattered_before = memory_.scattered;
-    std::optional<Point> point = scatter_.next(visited_, memory_.scattered);
-    if (!point) {
-      memory_.scattered = scattered_before;
-      memory_.exhausted = true;
-      break;
-    }
-    visited_.add(*point);
+  while (static_cast<int>(asks.size()) < count) {
+    std::optional<Point> point = scatter_.next(memory_.visited, memory_.scattered);
+    if (!point) break;
+    memory_.visited.add(*point);
     memory_.out[++memory_.asked] = *point;
     asks.push_back({.number = memory_.asked, .point = *std::move(point), .cells = {}, .purpose = "spread"});
   }
@@ -34,7 +30,7 @@ absl::Status SpaceFilling::learn(const Outcome& outcome) {
   if (outcome.ask > memory_.asked) return absl::NotFoundError(absl::StrCat("ask ", outcome.ask, " was never made"));
   Point point = space_.snap(outcome.point);
   if (outcome.ask == 0) {
-    visited_.add(point);
+    memory_.visited.add(point);
   } else {
     const auto out = memory_.out.find(outcome.ask);
     if (out == memory_.out.end()) {
@@ -44,8 +40,9 @@ absl::Status SpaceFilling::learn(const Outcome& outcome) {
     memory_.out.erase(out);
   }
   ++memory_.learned;
-  if (outcome.verdict != Verdict::kEvaluated) return absl::OkStatus();
-  const Standing standing = standing_of(outcome);
+  if (outcome.verdict != Verdict::kEvaluated || point.empty()) return absl::OkStatus();
+  Standing standing = standing_of(outcome);
+  if (outcome.ask == 0) standing.since = memory_.asked;
   if (!standing.better_than(memory_.best)) return absl::OkStatus();
   memory_.best = standing;
   memory_.best_point = std::move(point);
@@ -53,29 +50,35 @@ absl::Status SpaceFilling::learn(const Outcome& outcome) {
 }
 
 absl::Status SpaceFilling::amend(const Space& space) {
-  if (space.size() != space_.size()) return absl::InvalidArgumentError("an amended space has as many variables as before");
-  for (auto& [ask, point] : memory_.out) point = space.from_user(space_.to_user(point));
-  if (!memory_.best_point.empty()) memory_.best_point = space.from_user(space_.to_user(memory_.best_point));
+  if (const absl::Status sound = check_amendment(space_, space); !sound.ok()) return sound;
+  const auto moved = [&](const Point& point) {
+    return point.empty() ? Point() : point_in(space, space_, point).value_or(Point());
+  };
+  for (auto& [ask, point] : memory_.out) point = moved(point);
+  memory_.best_point = moved(memory_.best_point);
+  if (memory_.best_point.empty()) memory_.best = {};
+  memory_.visited = memory_.visited.in(space);
   space_ = space;
   scatter_ = Scatter(space, settings_.seed);
-  visited_ = Visited(space);
-  memory_.exhausted = false;
   return absl::OkStatus();
 }
 
 Progress SpaceFilling::progress() const {
   Progress progress{.asked = memory_.asked, .learned = memory_.learned};
-  progress.converged = memory_.exhausted;
-  const bool feasible = memory_.best.rank == Rank::kFeasible;
-  if (feasible) {
+  progress.converged = memory_.visited.full();
+  if (memory_.best.rank == Rank::kFeasible) {
     progress.best = memory_.best.value;
     progress.best_point = memory_.best_point;
   }
-  const std::string found = feasible ? "" : "; no feasible design so far";
-  progress.sentence = memory_.exhausted
-                          ? absl::StrCat("all ", space_.count(), " designs have been asked for", found)
-                          : absl::StrCat("spreading out: ", memory_.learned, " of ", memory_.asked, " points are in", found);
+  progress.sentence = sentence();
   return progress;
+}
+
+std::string SpaceFilling::sentence() const {
+  const std::string found = memory_.best.rank == Rank::kFeasible ? "" : "; no feasible design so far";
+  if (memory_.visited.full()) return absl::StrCat("all ", space_.count(), " designs have been tried", found);
+  const std::int64_t landed = memory_.asked - static_cast<std::int64_t>(memory_.out.size());
+  return absl::StrCat("spreading out: ", landed, " of ", memory_.asked, " points are in", found);
 }
 
 std::string SpaceFilling::save() const {
@@ -83,7 +86,7 @@ std::string SpaceFilling::save() const {
   saved.set_asked(memory_.asked);
   saved.set_learned(memory_.learned);
   saved.set_scattered(memory_.scattered);
-  saved.set_exhausted(memory_.exhausted);
+  saved.set_visited(memory_.visited.save());
   saved.set_best_rank(static_cast<std::uint32_t>(memory_.best.rank));
   saved.set_best_ask(memory_.best.since);
   saved.set_best(point_bytes({memory_.best.value}));
@@ -96,28 +99,27 @@ std::string SpaceFilling::save() const {
   return wrap_state(space_, settings_, saved);
 }
 
-absl::Status SpaceFilling::load(std::string_view bytes, const History& history) {
+absl::Status SpaceFilling::load(std::string_view bytes, const History&) {
   state::SpaceFilling saved;
   DROVER_TRY(unwrap_state(bytes, space_, settings_, saved));
   const bool sound = saved.asked() >= 0 && saved.learned() >= 0 && saved.scattered() >= 0 &&
                      saved.best_rank() <= static_cast<std::uint32_t>(Rank::kNowhere);
   if (!sound) return absl::DataLossError("the saved state of the search does not fit together");
-  Memory memory{.asked = saved.asked(), .learned = saved.learned(), .scattered = saved.scattered(),
-                .exhausted = saved.exhausted()};
+  DROVER_ASSIGN(Visited visited, Visited::load(space_, saved.visited()));
+  Memory memory{.asked = saved.asked(),
+                .learned = saved.learned(),
+                .scattered = saved.scattered(),
+                .visited = std::move(visited)};
   DROVER_ASSIGN(const Point best, point_from(saved.best(), 1));
   memory.best = {static_cast<Rank>(saved.best_rank()), best.front(), saved.best_ask()};
   if (memory.best.rank != Rank::kNowhere) {
     DROVER_ASSIGN(memory.best_point, point_from(saved.best_point(), space_.size()));
   }
-  Visited visited(space_);
   for (const state::Out& one : saved.out()) {
-    DROVER_ASSIGN(Point point, point_from(one.point(), space_.size()));
-    visited.add(point);
+    DROVER_ASSIGN(Point point, point_from(one.point(), one.point().empty() ? 0 : space_.size()));
     memory.out[one.ask()] = std::move(point);
   }
-  DROVER_TRY(visited.add_all(history));
   memory_ = std::move(memory);
-  visited_ = std::move(visited);
   return absl::OkStatus();
 }
 

@@ -2,7 +2,8 @@
 //
 // Today's design first, then scrambled Sobol' points (search/sobol.h): from the first point on no part of the space is
 // left out for long, whatever the budget turns out to be. It learns nothing from outcomes but which was the best, and
-// never converges; a discrete space comes to its end when every point was asked for. State: O(points out).
+// never converges; a discrete space comes to its end when every point was asked for. State: O(points out);
+// of discrete variables alone also a few bytes a point asked for.
 #pragma once
 
 #include <map>
@@ -29,15 +30,16 @@ class SpaceFilling final : public SearchMethod {
  private:
   struct Memory {
     std::int64_t asked = 0, learned = 0, scattered = 0;
-    bool exhausted = false;
     Standing best;  // kNowhere: none yet
     Point best_point;
-    std::map<std::int64_t, Point> out;
+    std::map<std::int64_t, Point> out;  // by ask; an empty point: an amended space no longer has it
+    Visited visited;
   };
+  std::string sentence() const;
+
   Space space_;
   Settings settings_;
   Scatter scatter_;
-  Visited visited_;
   Memory memory_;
 };
 

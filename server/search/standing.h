@@ -27,8 +27,8 @@ struct Standing {
 // Of an outcome that is kEvaluated or kFailed.
 Standing standing_of(const Outcome& outcome);
 
-// Whether an outcome could be one of a space of `variables` variables: INVALID_ARGUMENT, in words, when sizes do not fit or a
-// number is not finite.
+// Whether an outcome could be one of a space of `variables` variables: INVALID_ARGUMENT, in words, when sizes do not
+// fit or a number is not finite.
 absl::Status check_outcome(const Outcome& outcome, std::size_t variables);
 
 }  // namespace drover::search

@@ -2,9 +2,18 @@
 
 #include <algorithm>
 #include <cmath>
+#include <tuple>
 #include <utility>
 
 namespace drover::search {
+namespace {
+
+bool leaps_before(const Player& a, const Player& b) {
+  const auto merit = [](const Player& player) { return std::tie(player.standing.rank, player.standing.value); };
+  return merit(a) != merit(b) ? merit(b) < merit(a) : a.standing.since < b.standing.since;
+}
+
+}  // namespace
 
 const Player* Swarm::best() const {
   const Player* best = nullptr;
@@ -19,19 +28,37 @@ Player* Swarm::worst_idle() {
   Player* worst = nullptr;
   for (Player& player : players_) {
     if (!player.idle() || &player == best) continue;
-    // better_than() is false both ways for two that stand nowhere: the first stays.
-    if (worst == nullptr || worst->standing.better_than(player.standing)) worst = &player;
+    if (worst == nullptr || leaps_before(player, *worst)) worst = &player;
   }
   return worst;
 }
 
+Player* Swarm::place_for_foreign() {
+  const Player* const best = this->best();
+  Player *place = nullptr, *empty = nullptr;
+  for (Player& player : players_) {
+    if (!player.idle() || &player == best) continue;
+    if (!player.placed()) {
+      if (empty == nullptr) empty = &player;
+    } else if (place == nullptr || leaps_before(player, *place)) {
+      place = &player;
+    }
+  }
+  return place != nullptr ? place : empty;
+}
+
 Player* Swarm::of_ask(std::int64_t ask) {
-  const auto at = std::find_if(players_.begin(), players_.end(), [&](const Player& player) { return player.out == ask; });
+  const auto at =
+      std::find_if(players_.begin(), players_.end(), [&](const Player& player) { return player.out == ask; });
   return at == players_.end() ? nullptr : &*at;
 }
 
 bool Swarm::all_placed() const {
   return std::all_of(players_.begin(), players_.end(), [](const Player& player) { return player.placed(); });
+}
+
+bool Swarm::stands_at(const Point& point) const {
+  return std::any_of(players_.begin(), players_.end(), [&](const Player& player) { return player.point == point; });
 }
 
 Swarm::Box Swarm::box(double share) const {

@@ -6,8 +6,8 @@
 #include <string>
 #include <vector>
 
-#include "search/standing.h"
 #include "search/space.h"
+#include "search/standing.h"
 
 namespace drover::search {
 
@@ -29,11 +29,15 @@ class Swarm {
 
   // The best of those that stand somewhere; null: none does.
   const Player* best() const;
-  // The worst idle player other than the best; null: all are out. Those that stand nowhere are the worst of all, the
-  // first of them first.
+  // The worst idle player other than the best; null: all are out. Of equal ones the one that has stood the longest, so
+  // that on a plateau each has its turn. Those that stand nowhere are the worst of all, the first of them first.
   Player* worst_idle();
+  // Where a point from elsewhere may go: the worst idle one of those that stand somewhere, other than the best; else
+  // the first idle one that stands nowhere.
+  Player* place_for_foreign();
   Player* of_ask(std::int64_t ask);  // that is out for it; null: none
   bool all_placed() const;
+  bool stands_at(const Point& point) const;  // one of them does
 
   // The box of the share of the players nearest to the best one (by their largest coordinate difference), and its
   // largest side. Meaningless unless all are placed.

@@ -39,7 +39,7 @@ absl::Status Daemon::run() {
   }
   converse();
   wait_for_stop();
-  end_in_order();
+  if (!dropped()) end_in_order();
   return absl::OkStatus();
 }
 
@@ -57,6 +57,18 @@ void Daemon::stop() {
   stopping_ = true;
   changed_.notify_all();
   if (!enrolled_) conversation_->end();  // or it might try to enrol for ever
+}
+
+void Daemon::drop_for_test() {
+  conversation_->end();
+  const std::lock_guard lock(mutex_);
+  stopping_ = dropped_ = true;
+  changed_.notify_all();
+}
+
+bool Daemon::dropped() {
+  const std::lock_guard lock(mutex_);
+  return dropped_;
 }
 
 void Daemon::wait_for_stop() {

@@ -36,14 +36,14 @@ class Daemon {
   // Returns an error only when the first enrolment is refused, with the coordinator's words.
   absl::Status run();
   void stop();  // from any thread; returns at once
-
-  const Spool& spool() const { return *spool_; }
+  void drop_for_test();  // as a crash would: run() returns, and what runs is left to its runners
 
  private:
   Daemon(Options options, const code::Catalogue& catalogue, const link::Clock& clock)
       : options_(std::move(options)), catalogue_(catalogue), clock_(clock), roster_(options_.slots) {}
   void converse();
   void wait_for_stop();
+  bool dropped();
   void end_in_order();
   absl::Duration longest_grace() const;
 
@@ -58,8 +58,7 @@ class Daemon {
   std::vector<std::thread> loops_;
   std::mutex mutex_;
   std::condition_variable changed_;
-  bool stopping_ = false;
-  bool enrolled_ = false;
+  bool stopping_ = false, enrolled_ = false, dropped_ = false;
 };
 
 }  // namespace drover::session

@@ -34,12 +34,21 @@ std::vector<v1::RenewRequest> FakeCoordinator::renewals() const { return Lock(mu
 std::map<Key, v1::AttemptReport> FakeCoordinator::reports() const { return Lock(mutex_), reports_; }
 std::map<Key, int> FakeCoordinator::times_reported() const { return Lock(mutex_), times_reported_; }
 
+v1::Grant FakeCoordinator::completed(v1::Grant grant) const {
+  if (grant.store_id().empty()) grant.set_store_id(store_id_);
+  if (grant.term() == 0) grant.set_term(term_);
+  return grant;
+}
+
 void FakeCoordinator::grant(const v1::Grant& grant) {
   const Lock lock(mutex_);
-  waiting_.push_back(grant);
-  waiting_.back().set_store_id(grant.store_id().empty() ? store_id_ : grant.store_id());
-  waiting_.back().set_term(grant.term() == 0 ? term_ : grant.term());
+  waiting_.push_back(completed(grant));
   changed_.notify_all();
+}
+
+void FakeCoordinator::grant_as_a_poll_is_ended(const v1::Grant& grant) {
+  const Lock lock(mutex_);
+  late_.push_back(completed(grant));
 }
 
 void FakeCoordinator::grant_twice(const v1::Grant& grant) {
@@ -225,6 +234,8 @@ absl::StatusOr<v1::ReportResponse> FakeCoordinator::report(const v1::ReportReque
 
 void FakeCoordinator::end_polls() {
   const Lock lock(mutex_);
+  waiting_.insert(waiting_.end(), late_.begin(), late_.end());
+  late_.clear();
   ++polls_ended_;
   changed_.notify_all();
 }

@@ -28,6 +28,7 @@ class FakeCoordinator final : public Coordinator {
   std::map<Key, int> times_reported() const;
 
   void grant(const v1::Grant& grant);
+  void grant_as_a_poll_is_ended(const v1::Grant& grant);  // by end_polls(): its caller does not learn of it
   void grant_twice(const v1::Grant& grant);  // two answers hold it
   void order_stop(const Key& key);
   void drain(bool on);
@@ -60,7 +61,8 @@ class FakeCoordinator final : public Coordinator {
 
   mutable std::recursive_mutex mutex_;
   mutable std::condition_variable_any changed_;
-  std::deque<v1::Grant> waiting_;
+  std::deque<v1::Grant> waiting_, late_;
+  v1::Grant completed(v1::Grant grant) const;
   std::vector<v1::EnrolRequest> enrolments_;
   std::vector<v1::LeaseRequest> leases_;
   std::vector<v1::ReportRequest> report_calls_;
