@@ -51,9 +51,18 @@ std::vector<Ask> Leapfrogging::next(int count, const History&) {
   return asks;
 }
 
+std::optional<std::size_t> Leapfrogging::next_player() const {
+  const Player* const best = memory_.swarm.best();
+  const bool leaps = best != nullptr && best->standing.rank != Rank::kFailed;
+  // A little less than the half, so that the box of those that have arrived is below the tolerance in spite of
+  // rounding.
+  return memory_.swarm.worst_idle(leaps ? 0.49 * settings_.tolerance : 0.0);
+}
+
 std::optional<Ask> Leapfrogging::ask() {
-  Player* const player = memory_.swarm.worst_idle();
-  if (player == nullptr) return std::nullopt;
+  const std::optional<std::size_t> next = next_player();
+  if (!next) return std::nullopt;
+  Player* const player = &memory_.swarm.players()[*next];
   const bool starts = !player->placed();
   std::optional<Point> point = landing(*player);
   if (!point) return std::nullopt;
@@ -194,11 +203,10 @@ std::string Leapfrogging::sentence() const {
   const Player* const best = memory_.swarm.best();
   const auto count = [&](auto what) { return std::count_if(players.begin(), players.end(), what); };
   const auto placed = count([](const Player& player) { return player.placed(); });
-  const auto ready = count([&](const Player& player) { return player.idle() && &player != best; });
   const auto out = count([](const Player& player) { return !player.idle(); });
   std::string end = best != nullptr && best->standing.rank == Rank::kFeasible ? "" : "; no feasible design so far";
   if (memory_.visited.full()) return absl::StrCat("all ", space_.count(), " designs have been tried", end);
-  if (ready == 0 && out > 0) absl::StrAppend(&end, "; waiting for ", out, " outcomes");
+  if (out > 0 && !next_player()) absl::StrAppend(&end, "; waiting for ", out, " outcomes");
   if (placed < std::ssize(players)) {
     return absl::StrCat("spreading out: ", placed, " of ", players.size(), " players stand on their first place", end);
   }

@@ -14,6 +14,9 @@
 //   soon as every player has been sent to its first place. The best never leaps.
 // - An infeasible or failed landing makes the player one of the worst, so that it leaps again from where it landed.
 //   While no player stands on anything but a failure there is nothing to leap over, and players are scattered further.
+// - A player nearer to the best than half the tolerance has arrived and leaps no more, however bad it is there: around
+// a
+//   lone good point (a cliff, a lucky value) the worst would leap ever closer, and the others never move.
 // - A landing that was withdrawn, stopped early or ran into its time limit says nothing of the place: the player is
 //   idle again where it stood before.
 // - Stepped and integer variables land on the level that the draw falls into. A choice has no other side: the player
@@ -62,7 +65,8 @@ class Leapfrogging final : public SearchMethod {
     Visited visited;
   };
   bool converged() const;
-  bool stale() const;  // a discrete swarm that finds nothing better any more
+  bool stale() const;                              // a discrete swarm that finds nothing better any more
+  std::optional<std::size_t> next_player() const;  // none: all are out, or as near to the best as they are to come
   std::optional<Ask> ask();
   std::optional<Point> landing(const Player& player);
   Point leap(const Player& player, const Player& best, std::int64_t number, int attempt) const;

@@ -22,9 +22,15 @@ std::unique_ptr<SearchMethod> make(const Space& space, const Settings& settings)
 // Sorted by name.
 constexpr std::array kMethods = {Entry{"leapfrogging", make<Leapfrogging>}, Entry{"space-filling", make<SpaceFilling>}};
 
+constexpr int kMostPlayers = 1'000'000;
+
 absl::Status check(const Settings& settings) {
-  if (settings.parallel < 1) return absl::InvalidArgumentError("parallel is below 1");
-  if (settings.population < 0) return absl::InvalidArgumentError("population is below 0");
+  if (settings.parallel < 1 || settings.parallel > kMostPlayers) {
+    return absl::InvalidArgumentError(absl::StrCat("parallel is not between 1 and ", kMostPlayers));
+  }
+  if (settings.population < 0 || settings.population > kMostPlayers) {
+    return absl::InvalidArgumentError(absl::StrCat("population is not between 0 and ", kMostPlayers));
+  }
   if (!(settings.tolerance >= 0.0 && settings.tolerance < 1.0)) {
     return absl::InvalidArgumentError("tolerance is no share of the range below 1");
   }

@@ -13,6 +13,13 @@ bool leaps_before(const Player& a, const Player& b) {
   return merit(a) != merit(b) ? merit(b) < merit(a) : a.standing.since < b.standing.since;
 }
 
+// The largest difference in any variable.
+double distance(const Player& a, const Player& b) {
+  double largest = 0.0;
+  for (std::size_t i = 0; i < a.point.size(); ++i) largest = std::max(largest, std::abs(a.point[i] - b.point[i]));
+  return largest;
+}
+
 }  // namespace
 
 const Player* Swarm::best() const {
@@ -23,12 +30,15 @@ const Player* Swarm::best() const {
   return best;
 }
 
-Player* Swarm::worst_idle() {
+std::optional<std::size_t> Swarm::worst_idle(double near) const {
   const Player* const best = this->best();
-  Player* worst = nullptr;
-  for (Player& player : players_) {
+  std::optional<std::size_t> worst;
+  for (std::size_t i = 0; i < players_.size(); ++i) {
+    const Player& player = players_[i];
     if (!player.idle() || &player == best) continue;
-    if (worst == nullptr || leaps_before(player, *worst)) worst = &player;
+    if (worst && !leaps_before(player, players_[*worst])) continue;
+    const bool arrived = player.placed() && best != nullptr && distance(player, *best) < near;
+    if (!arrived) worst = i;
   }
   return worst;
 }
@@ -68,17 +78,13 @@ Swarm::Box Swarm::box(double share) const {
   std::vector<std::pair<double, std::size_t>> order;  // distance, index
   for (std::size_t i = 0; i < players_.size(); ++i) {
     if (!players_[i].placed()) continue;
-    double distance = 0.0;
-    for (std::size_t j = 0; j < centre->point.size(); ++j) {
-      distance = std::max(distance, std::abs(players_[i].point[j] - centre->point[j]));
-    }
-    order.emplace_back(distance, i);
+    order.emplace_back(distance(players_[i], *centre), i);
   }
   std::sort(order.begin(), order.end());
   const auto wanted = static_cast<std::size_t>(std::ceil(share * static_cast<double>(players_.size()) - 1e-9));
   order.resize(std::min(order.size(), std::max<std::size_t>(1, wanted)));
   box.low = box.high = centre->point;
-  for (const auto& [distance, i] : order) {
+  for (const auto& [apart, i] : order) {
     for (std::size_t j = 0; j < box.low.size(); ++j) {
       box.low[j] = std::min(box.low[j], players_[i].point[j]);
       box.high[j] = std::max(box.high[j], players_[i].point[j]);

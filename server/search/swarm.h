@@ -29,9 +29,10 @@ class Swarm {
 
   // The best of those that stand somewhere; null: none does.
   const Player* best() const;
-  // The worst idle player other than the best; null: all are out. Of equal ones the one that has stood the longest, so
-  // that on a plateau each has its turn. Those that stand nowhere are the worst of all, the first of them first.
-  Player* worst_idle();
+  // Index of the worst idle player that is not closer than `near` to the best in every variable (nor the best itself);
+  // none: there is none. Of equal ones the one that has stood the longest, so that on a plateau each has its turn.
+  // Those that stand nowhere are the worst of all, the first of them first.
+  std::optional<std::size_t> worst_idle(double near) const;
   // Where a point from elsewhere may go: the worst idle one of those that stand somewhere, other than the best; else
   // the first idle one that stands nowhere.
   Player* place_for_foreign();
