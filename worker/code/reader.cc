@@ -47,7 +47,8 @@ class Lines {
     lines.written_ = absl::TimeFromTimespec(info.st_mtim);
     return lines;
   }
-  Lines(Lines&& other) noexcept : file_(std::exchange(other.file_, -1)), written_(other.written_) {}
+  Lines(Lines&& other) noexcept
+      : file_(std::exchange(other.file_, -1)), written_(other.written_), block_(std::move(other.block_)) {}
   Lines(const Lines&) = delete;
   Lines& operator=(const Lines&) = delete;
   ~Lines() {
