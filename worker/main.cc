@@ -27,9 +27,7 @@ CLI::App* add_serve(CLI::App& app, ServeOptions& asked) {
   command->add_option("--coordinator", asked.coordinator,
                       "unix:/path or host:port; default: this user's coordinator on this machine");
   command->add_option("--codes", asked.codes, "Folder of the code definitions")->required();
-  command->add_option("--slots", asked.slots, "Simulations at once")
-      ->check(CLI::Range(1, 4096))
-      ->capture_default_str();
+  command->add_option("--slots", asked.slots, "Simulations at once")->check(CLI::Range(1, 4096))->capture_default_str();
   command->add_option("--name", asked.name, "Of this worker, unique at its coordinator; default: the host's name");
   command->add_option("--spool", asked.spool,
                       "Folder for orders and results, on a local disk; default: ~/.local/state/drover/worker-<name>");

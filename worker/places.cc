@@ -27,9 +27,8 @@ std::string folder_in(const char* variable) {
 
 absl::Status check_worker_name(const std::string& name) {
   const bool fits = !name.empty() && name.size() <= kLongestName && is_alphanumeric(name.front()) &&
-                    std::all_of(name.begin(), name.end(), [](char c) {
-                      return is_alphanumeric(c) || c == '.' || c == '_' || c == '-';
-                    });
+                    std::all_of(name.begin(), name.end(),
+                                [](char c) { return is_alphanumeric(c) || c == '.' || c == '_' || c == '-'; });
   if (fits) return absl::OkStatus();
   return absl::InvalidArgumentError(absl::StrCat("--name \"", link::printable(name), "\": a worker's name has 1 to ",
                                                  kLongestName,
@@ -41,8 +40,9 @@ absl::StatusOr<std::string> default_spool(const std::string& name) {
   std::string state = folder_in("XDG_STATE_HOME");
   if (const std::string home = folder_in("HOME"); state.empty() && !home.empty()) state = home + "/.local/state";
   if (!state.empty()) return absl::StrCat(state, "/drover/worker-", name);
-  return absl::FailedPreconditionError("there is neither XDG_STATE_HOME nor HOME to keep the spool in; name a folder "
-                                       "with --spool");
+  return absl::FailedPreconditionError(
+      "there is neither XDG_STATE_HOME nor HOME to keep the spool in; name a folder "
+      "with --spool");
 }
 
 absl::StatusOr<std::string> sister_program(const std::string& name) {

@@ -62,8 +62,8 @@ absl::StatusOr<code::Catalogue> offered_codes(const std::string& folder) {
   DROVER_ASSIGN(code::Catalogue catalogue, code::read_catalogue(absolute_path(folder)));
   for (const std::string& problem : catalogue.problems) spdlog::error("a code is not offered: {}", problem);
   if (!catalogue.codes.empty()) return catalogue;
-  return absl::InvalidArgumentError(absl::StrCat("no code in ", folder, " can be offered; `drover-worker codes --codes ",
-                                                 folder, "` shows why"));
+  return absl::InvalidArgumentError(
+      absl::StrCat("no code in ", folder, " can be offered; `drover-worker codes --codes ", folder, "` shows why"));
 }
 
 // Until a signal comes, or the owner ends.

@@ -16,6 +16,7 @@
 namespace drover::session {
 namespace {
 
+constexpr char kAsked[] = "asked to";
 constexpr int kThreads = 2;  // a large result that is being read does not hold up the next launch
 
 }  // namespace
@@ -94,6 +95,10 @@ absl::StatusOr<const code::Definition*> Attempts::definition_of(const v1::Grant&
   return definition;
 }
 
+absl::Duration Attempts::time_limit(const v1::Grant& grant, const code::Definition& definition) {
+  return grant.has_time_limit() ? link::from_proto(grant.time_limit()) : definition.time_limit;
+}
+
 void Attempts::begin(const Key& key) {
   const std::optional<Attempt> attempt = tools_.roster.find(key);
   if (!attempt) return;
@@ -125,17 +130,17 @@ absl::Status Attempts::launch(const Key& key, const v1::Grant& grant, const code
   what.fence = key.fence;
   what.command = staged.command;
   what.environment = staged.environment;
-  what.time_limit = grant.has_time_limit() ? link::from_proto(grant.time_limit()) : definition.time_limit;
+  what.time_limit = time_limit(grant, definition);
   what.grace = definition.grace;
   DROVER_ASSIGN(const pid_t runner, process::launch(what));
   tools_.roster.begun(key, tools_.clock.steady());
-  spdlog::info("running run={} attempt={} study={} code={} runner={}", key.run, key.fence, grant.study(),
-               grant.code(), runner);
+  spdlog::info("running run={} attempt={} study={} code={} runner={}", key.run, key.fence, grant.study(), grant.code(),
+               runner);
   const auto gone = [this, key] { enqueue([this, key] { ended(key); }); };
   if (!watcher_->add(runner, gone).ok()) gone();
   // A stop that came while it was being launched found nothing to stop.
   if (const std::optional<Attempt> now = tools_.roster.find(key); now && (now->stop_asked || closing_)) {
-    order_stop(key, now->stop_asked ? now->stop_reason : kWorkerEnds);
+    order_stop(key, now->stop_asked ? kAsked : kWorkerEnds);
   }
   return absl::OkStatus();
 }
@@ -151,11 +156,12 @@ void Attempts::stop(const Key& key, const std::string& reason) {
   if (!tools_.roster.ask_stop(key, reason)) return;
   spdlog::info("asked to stop: {} run={} attempt={}", reason, key.run, key.fence);
   const std::optional<Attempt> attempt = tools_.roster.find(key);
-  if (attempt && attempt->phase == Phase::kRunning) order_stop(key, reason);
+  if (attempt && attempt->phase == Phase::kRunning) order_stop(key, reason.empty() ? kAsked : reason);
 }
 
+void Attempts::close() { closing_ = true; }
+
 void Attempts::stop_all() {
-  closing_ = true;
   for (const auto& [key, attempt] : tools_.roster.all()) {
     if (attempt.phase == Phase::kRunning && !attempt.stop_asked) order_stop(key, kWorkerEnds);
   }

@@ -47,16 +47,17 @@ class Attempts final : public Hands {
   static absl::StatusOr<std::unique_ptr<Attempts>> start(Tools tools);
   ~Attempts() override;
 
-  // What earlier daemons left in the spool, before the first enrolment: ends what still runs, judges what has ended, and
-  // leaves a report of every attempt that has no receipt. Blocks as long as simulations take to end.
+  // What earlier daemons left in the spool, before the first enrolment: ends what still runs, judges what has ended,
+  // and leaves a report of every attempt that has no receipt. Blocks as long as simulations take to end.
   void recover();
 
   absl::Status take(const v1::Grant& grant) override;
   void stop(const Key& key, const std::string& reason) override;
   void acknowledged(const Key& key) override;
 
-  // Nothing more is begun: what waits is handed back, what runs is stopped and will be reported as lost to the end of
-  // this daemon.
+  // Nothing more is begun from now on: what waits, and what still comes, is handed back.
+  void close();
+  // After close(): what runs is stopped, and will be reported as lost to the end of this daemon.
   void stop_all();
 
  private:
@@ -68,6 +69,7 @@ class Attempts final : public Hands {
   void begin(const Key& key);
   absl::Status launch(const Key& key, const v1::Grant& grant, const code::Definition& definition);
   absl::StatusOr<const code::Definition*> definition_of(const v1::Grant& grant) const;
+  static absl::Duration time_limit(const v1::Grant& grant, const code::Definition& definition);
   void ended(const Key& key);
   void order_stop(const Key& key, const std::string& why);
 
@@ -77,6 +79,7 @@ class Attempts final : public Hands {
   absl::Duration grace_of(const v1::Grant& grant) const;
   // The report that follows from what is found on the disk, when nothing of the attempt runs.
   v1::AttemptReport conclude(const Key& key, const v1::Grant& grant, const process::Survey& found) const;
+  bool stop_was_ordered(const Key& key) const;
   v1::AttemptReport judge(const Key& key, const v1::Grant& grant, const process::Survey& found) const;
   v1::AttemptReport runner_failed(const Key& key) const;
   // Into the spool, whatever that takes; only the end of this daemon ends it earlier.

@@ -65,6 +65,7 @@ void Attempts::recover_one(const SpoolEntry& entry) {
   spdlog::info("a report waits in the spool run={} attempt={} study={}", key.run, key.fence, grant->study());
   tools_.roster.ready(key);
   tools_.outbox.add(key);
+  tools_.roster.wake();
 }
 
 absl::StatusOr<process::Survey> Attempts::end_predecessor(const Key& key, const v1::Grant& grant) {
@@ -85,11 +86,11 @@ v1::AttemptReport Attempts::report_of_predecessor(const Key& key, const v1::Gran
   if (ran) {
     spdlog::warn("a simulation of the worker's earlier life is ended run={} attempt={} study={}", key.run, key.fence,
                  grant.study());
-    if (!tools_.files.exists(file(key, process::kStopFile))) order_stop(key, kWorkerEnds);
     found = end_predecessor(key, grant);
   }
   if (!found.ok()) return lost(v1::LOSS_REASON_EXIT_UNKNOWN, std::string(found.status().message()));
   if (found->found == process::Found::kOrdered) {
+    order_stop(key, kWorkerEnds);  // should a runner have been started at the last moment, it finds this
     return not_begun("its worker was started anew before it began");
   }
   // It may have come to its own end, seen by its runner, before the order to stop reached it.

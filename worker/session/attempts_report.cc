@@ -71,17 +71,23 @@ v1::AttemptReport Attempts::runner_failed(const Key& key) const {
                            log.empty() ? "" : ": ", log));
 }
 
+bool Attempts::stop_was_ordered(const Key& key) const {
+  const std::string why = tools_.files.read(file(key, process::kStopFile)).value_or("");
+  return !why.empty() && why != kWorkerEnds;  // process::end_leftovers() leaves it empty
+}
+
 v1::AttemptReport Attempts::judge(const Key& key, const v1::Grant& grant, const process::Survey& found) const {
   const absl::StatusOr<const code::Definition*> definition = definition_of(grant);
   if (!definition.ok()) {
     return lost(v1::LOSS_REASON_SITE, absl::StrCat("it ended, and its result cannot be read any more: ",
                                                    std::string(definition.status().message())));
   }
-  if (found.ended->cause == process::Ended::Cause::kStopped &&
-      tools_.files.read(file(key, process::kStopFile)).value_or("") == kWorkerEnds) {
+  if (found.ended->cause == process::Ended::Cause::kStopped && !stop_was_ordered(key)) {
     return lost(v1::LOSS_REASON_DAEMON_RESTART, "its worker ended, and stopped what ran");
   }
-  return code::judge(**definition, how_it_ended(found), work_folder(key), file(key, process::kStdoutFile),
+  code::Definition as_run = **definition;
+  as_run.time_limit = time_limit(grant, as_run);
+  return code::judge(as_run, how_it_ended(found), work_folder(key), file(key, process::kStdoutFile),
                      file(key, process::kStderrFile));
 }
 
@@ -99,8 +105,10 @@ void Attempts::finish(const Key& key, const v1::Grant& grant, v1::AttemptReport 
   }
   spdlog::info("{} run={} attempt={} study={} number={}", words(report), key.run, key.fence, grant.study(),
                grant.number());
+  // In this order, so that the report is what asks for the next run of the slot.
   tools_.roster.ready(key);
   tools_.outbox.add(key);
+  tools_.roster.wake();
 }
 
 void Attempts::acknowledged(const Key& key) {

@@ -12,7 +12,7 @@
 namespace drover::session {
 namespace {
 
-constexpr absl::Duration kLook = absl::Seconds(1);         // how often an idle loop looks whether it has to end
+constexpr absl::Duration kLook = absl::Seconds(1);  // how often an idle loop looks whether it has to end
 constexpr absl::Duration kAskAgain = absl::Milliseconds(20);
 constexpr double kJitter = 0.2;
 
@@ -80,6 +80,7 @@ void Conversation::lease_loop() {
       pause_.wait(std::min(session->renew_every, kLook));
       continue;
     }
+    if (parties_.outbox.size() > 0) parties_.outbox.wait_until_empty(kLook);  // a report asks for runs, too
     const int promised = parties_.roster.promise();
     if (promised == 0) {
       parties_.roster.wait_for_slot(kLook);
@@ -124,17 +125,18 @@ void Conversation::take_grants(const google::protobuf::RepeatedPtrField<v1::Gran
     }
     const Identity known = parties_.spool.identity();
     if (grant.store_id() != known.store_id || grant.term() < known.term) {
-      spdlog::error("a grant is refused: it is of store {} term {}, and this worker serves store {} term {} "
-                    "run={} attempt={} study={}",
-                    grant.store_id(), grant.term(), known.store_id, known.term, grant.run(), grant.fence(),
-                    grant.study());
+      spdlog::error(
+          "a grant is refused: it is of store {} term {}, and this worker serves store {} term {} "
+          "run={} attempt={} study={}",
+          grant.store_id(), grant.term(), known.store_id, known.term, grant.run(), grant.fence(), grant.study());
       continue;
     }
     if (const absl::Status taken = parties_.hands.take(grant); !taken.ok()) {
       // The next roll call, which lacks it, gives it back.
-      spdlog::error("a grant could not be written down and is given back by enrolling again: {} run={} attempt={} "
-                    "study={}",
-                    std::string(taken.message()), grant.run(), grant.fence(), grant.study());
+      spdlog::error(
+          "a grant could not be written down and is given back by enrolling again: {} run={} attempt={} "
+          "study={}",
+          std::string(taken.message()), grant.run(), grant.fence(), grant.study());
       pause_.wait(options_.times.disk_retry);
       session_.lost(session.generation);
       return;

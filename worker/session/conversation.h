@@ -1,5 +1,5 @@
-// A worker's side of the lease protocol: enrolment and roll call, leases, renewals, reports. What is granted, stopped or
-// acknowledged is handed to `Hands`, which does the work.
+// A worker's side of the lease protocol: enrolment and roll call, leases, renewals, reports. What is granted, stopped
+// or acknowledged is handed to `Hands`, which does the work.
 #pragma once
 
 #include <atomic>
@@ -52,8 +52,8 @@ class Conversation {
   // INVALID_ARGUMENT, PERMISSION_DENIED, UNIMPLEMENTED...: refused, an operator must look at it.
   absl::Status enrol();
 
-  void lease_loop();   // runs for free slots
-  void renew_loop();   // and a new enrolment when the session is lost
+  void lease_loop();  // runs for free slots
+  void renew_loop();  // and a new enrolment when the session is lost
   void report_loop();
 
   // Asks for no more runs. What a poll under way was granted is still taken, so that Hands can give it back.

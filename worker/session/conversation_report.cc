@@ -13,8 +13,8 @@ namespace drover::session {
 namespace {
 
 constexpr absl::Duration kLook = absl::Seconds(1);
-constexpr std::size_t kMostReports = 100;           // of the contract
-constexpr std::size_t kMostBytes = 768 << 10;       // a message may have 1 MiB
+constexpr std::size_t kMostReports = 100;      // of the contract
+constexpr std::size_t kMostBytes = 768 << 10;  // a message may have 1 MiB
 
 bool asks_for_repair(const absl::Status& status) { return absl::IsInvalidArgument(status); }
 
@@ -97,9 +97,10 @@ void Conversation::sent(const v1::ReportResponse& answer, const std::vector<Key>
       receipts.push_back(receipt);
       continue;
     }
-    spdlog::error("a receipt is refused: it is of store {} term {}, and this worker serves store {} term {} run={} "
-                  "attempt={}",
-                  receipt.store_id(), receipt.term(), known.store_id, known.term, receipt.run(), receipt.fence());
+    spdlog::error(
+        "a receipt is refused: it is of store {} term {}, and this worker serves store {} term {} run={} "
+        "attempt={}",
+        receipt.store_id(), receipt.term(), known.store_id, known.term, receipt.run(), receipt.fence());
     session_.lost(session.generation);
   }
   const absl::Status kept = parties_.spool.write_receipts(receipts);
@@ -122,9 +123,10 @@ void Conversation::refused(const absl::Status& status, const std::vector<Key>& k
     for (const Key& key : keys) parties_.outbox.isolate(key);
     return;
   }
-  spdlog::error("a report was refused as malformed and stays in the spool, for the next start to try again: {} run={} "
-                "attempt={}",
-                std::string(status.message()), keys.front().run, keys.front().fence);
+  spdlog::error(
+      "a report was refused as malformed and stays in the spool, for the next start to try again: {} run={} "
+      "attempt={}",
+      std::string(status.message()), keys.front().run, keys.front().fence);
   parties_.outbox.remove(keys.front());
 }
 

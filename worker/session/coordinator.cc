@@ -1,10 +1,10 @@
 #include "session/coordinator.h"
 
+#include <grpcpp/grpcpp.h>
+
 #include <mutex>
 #include <set>
 #include <utility>
-
-#include <grpcpp/grpcpp.h>
 
 #include "drover/v1/work.grpc.pb.h"
 #include "link/channel.h"

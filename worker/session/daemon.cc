@@ -15,9 +15,8 @@ absl::StatusOr<std::unique_ptr<Daemon>> Daemon::open(Options options, const code
   std::unique_ptr<Daemon> daemon(new Daemon(std::move(options), catalogue, clock));
   DROVER_ASSIGN(daemon->spool_, Spool::open(daemon->options_.spool, files));
   DROVER_TRY(files.make_folder(daemon->options_.scratch));
-  DROVER_ASSIGN(daemon->attempts_,
-                Attempts::start({daemon->options_, catalogue, files, *daemon->spool_, daemon->roster_,
-                                 daemon->outbox_, clock}));
+  DROVER_ASSIGN(daemon->attempts_, Attempts::start({daemon->options_, catalogue, files, *daemon->spool_,
+                                                    daemon->roster_, daemon->outbox_, clock}));
   std::vector<v1::CodeDefinition> codes;
   for (const code::Definition& definition : catalogue.codes) codes.push_back(definition.to_proto());
   const Parties parties{coordinator, *daemon->spool_, daemon->roster_, daemon->outbox_, *daemon->attempts_, clock};
@@ -90,6 +89,7 @@ absl::Duration Daemon::longest_grace() const {
 }
 
 void Daemon::end_in_order() {
+  attempts_->close();
   conversation_->end_leases(options_.times.farewell);
   attempts_->stop_all();
   if (!roster_.wait_until_idle(longest_grace() + options_.times.stop_margin)) {

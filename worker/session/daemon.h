@@ -35,7 +35,7 @@ class Daemon {
   // and delivers what the coordinator takes within some seconds; the rest waits in the spool for the next start.
   // Returns an error only when the first enrolment is refused, with the coordinator's words.
   absl::Status run();
-  void stop();  // from any thread; returns at once
+  void stop();           // from any thread; returns at once
   void drop_for_test();  // as a crash would: run() returns, and what runs is left to its runners
 
  private:

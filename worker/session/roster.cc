@@ -33,6 +33,10 @@ void Roster::ended(const Key& key) {
 void Roster::ready(const Key& key) {
   const std::lock_guard lock(mutex_);
   if (const auto at = attempts_.find(key); at != attempts_.end()) at->second.phase = Phase::kReady;
+}
+
+void Roster::wake() {
+  const std::lock_guard lock(mutex_);
   changed_.notify_all();
 }
 

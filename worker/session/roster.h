@@ -46,7 +46,8 @@ class Roster {
   bool accept(const v1::Grant& grant, absl::Duration now);
   void begun(const Key& key, absl::Duration now);
   void ended(const Key& key);
-  void ready(const Key& key);   // gives its slot free
+  void ready(const Key& key);  // gives its slot free, without waking who waits for one
+  void wake();
   void forget(const Key& key);  // acknowledged
   // Marks it, and says whether it was not marked before and has not ended.
   bool ask_stop(const Key& key, const std::string& reason);

@@ -70,14 +70,14 @@ absl::Status Spool::lock() {
   lock_ = ::open(path.c_str(), O_RDWR | O_CREAT | O_CLOEXEC | O_NOFOLLOW, 0600);
   if (lock_ < 0) return absl::FailedPreconditionError(absl::StrCat("spool ", path, ": ", std::strerror(errno)));
   if (flock(lock_, LOCK_EX | LOCK_NB) == 0) return absl::OkStatus();
-  if (errno != EWOULDBLOCK) return absl::FailedPreconditionError(absl::StrCat("spool ", path, ": ", std::strerror(errno)));
-  return absl::FailedPreconditionError(absl::StrCat(
-      "spool ", folder_, " is in use by another worker that runs now; stop that one, or give this one another --spool"));
+  if (errno != EWOULDBLOCK)
+    return absl::FailedPreconditionError(absl::StrCat("spool ", path, ": ", std::strerror(errno)));
+  return absl::FailedPreconditionError(
+      absl::StrCat("spool ", folder_,
+                   " is in use by another worker that runs now; stop that one, or give this one another --spool"));
 }
 
-std::string Spool::attempt_folder(const Key& key) const {
-  return absl::StrCat(folder_, kAttempts, "/", name_of(key));
-}
+std::string Spool::attempt_folder(const Key& key) const { return absl::StrCat(folder_, kAttempts, "/", name_of(key)); }
 
 std::string Spool::file(const Key& key, const char* name) const { return absl::StrCat(attempt_folder(key), "/", name); }
 
@@ -167,7 +167,8 @@ std::vector<SpoolEntry> Spool::entries() const {
   for (const std::string& name : *names) {
     const std::optional<Key> key = key_named(name);
     if (!key) continue;
-    entries.push_back({*key, files_.exists(file(*key, process::kOrderFile)), files_.exists(file(*key, process::kReportFile)),
+    entries.push_back({*key, files_.exists(file(*key, process::kOrderFile)),
+                       files_.exists(file(*key, process::kReportFile)),
                        files_.exists(file(*key, process::kReceiptFile))});
   }
   std::sort(entries.begin(), entries.end(), [](const auto& a, const auto& b) { return a.key < b.key; });

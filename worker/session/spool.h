@@ -44,8 +44,8 @@ struct Retention {
   std::size_t most = 10'000;  // delivered entries
 };
 
-// Thread-safe. Every write is durable before it returns. Errors: RESOURCE_EXHAUSTED when the disk is full, DATA_LOSS for
-// a file that cannot be read as what it should be, each with the file's name.
+// Thread-safe. Every write is durable before it returns. Errors: RESOURCE_EXHAUSTED when the disk is full, DATA_LOSS
+// for a file that cannot be read as what it should be, each with the file's name.
 class Spool {
  public:
   // Makes the folder where there is none, locks it and raises the incarnation. FAILED_PRECONDITION: another daemon uses

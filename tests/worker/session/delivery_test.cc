@@ -40,11 +40,15 @@ class FullDisk final : public process::Files {
     return under_.write_durably(path, bytes);
   }
   absl::StatusOr<std::string> read(const std::string& path) const override { return under_.read(path); }
-  absl::StatusOr<std::vector<std::string>> list(const std::string& folder) const override { return under_.list(folder); }
+  absl::StatusOr<std::vector<std::string>> list(const std::string& folder) const override {
+    return under_.list(folder);
+  }
   absl::Status make_folder(const std::string& path) override { return under_.make_folder(path); }
   absl::Status remove_tree(const std::string& path) override { return under_.remove_tree(path); }
   bool exists(const std::string& path) const override { return under_.exists(path); }
-  absl::StatusOr<std::int64_t> free_bytes(const std::string& folder) const override { return under_.free_bytes(folder); }
+  absl::StatusOr<std::int64_t> free_bytes(const std::string& folder) const override {
+    return under_.free_bytes(folder);
+  }
 
  private:
   process::RealFiles under_;
@@ -62,7 +66,8 @@ TEST(Delivery, HasEveryReportOnDiskBeforeItIsSent) {
     const std::lock_guard lock(mutex);
     for (const v1::AttemptReport& report : request.reports()) {
       ++looked;
-      const absl::StatusOr<std::string> bytes = shop.files.read(shop.attempt_file({report.run(), report.fence()}, "report"));
+      const absl::StatusOr<std::string> bytes =
+          shop.files.read(shop.attempt_file({report.run(), report.fence()}, "report"));
       v1::AttemptReport kept;
       const bool same = bytes.ok() && kept.ParseFromString(*bytes) &&
                         google::protobuf::util::MessageDifferencer::Equals(kept, report);

@@ -1,4 +1,5 @@
-// A coordinator in the test's own process: grants what it is told to, keeps what it hears, and fails when it is told to.
+// A coordinator in the test's own process: grants what it is told to, keeps what it hears, and fails when it is told
+// to.
 #pragma once
 
 #include <condition_variable>
@@ -24,15 +25,15 @@ class FakeCoordinator final : public Coordinator {
   std::vector<v1::LeaseRequest> leases() const;
   std::vector<v1::ReportRequest> report_calls() const;  // also those that were not answered
   std::vector<v1::RenewRequest> renewals() const;
-  std::map<Key, v1::AttemptReport> reports() const;     // that were acknowledged
+  std::map<Key, v1::AttemptReport> reports() const;  // that were acknowledged
   std::map<Key, int> times_reported() const;
 
   void grant(const v1::Grant& grant);
   void grant_as_a_poll_is_ended(const v1::Grant& grant);  // by end_polls(): its caller does not learn of it
-  void grant_twice(const v1::Grant& grant);  // two answers hold it
+  void grant_twice(const v1::Grant& grant);               // two answers hold it
   void order_stop(const Key& key);
   void drain(bool on);
-  void go_away();    // from now on every call is UNAVAILABLE
+  void go_away();  // from now on every call is UNAVAILABLE
   void come_back();
   void lose_sessions();  // NO_SUCH_SESSION until the next enrolment
   // The next `many` calls of that kind are heard and done, and their answers are lost.

@@ -34,7 +34,8 @@ class FakeService final : public v1::Work::Service {
   grpc::Status Enrol(grpc::ServerContext*, const v1::EnrolRequest* request, v1::EnrolResponse* answer) override {
     return pass(fake_.enrol(*request), answer);
   }
-  grpc::Status Lease(grpc::ServerContext* context, const v1::LeaseRequest* request, v1::LeaseResponse* answer) override {
+  grpc::Status Lease(grpc::ServerContext* context, const v1::LeaseRequest* request,
+                     v1::LeaseResponse* answer) override {
     v1::LeaseRequest shorter = *request;  // so that the end of a poll by its client frees this thread soon
     if (request->wait().seconds() > 0) {
       shorter.mutable_wait()->set_seconds(0);
@@ -98,8 +99,17 @@ class ProgramTest : public ::testing::Test {
   }
 
   std::vector<std::string> serve() const {
-    return {"serve",  "--coordinator", address_, "--codes", codes(), "--name", "bench", "--spool",
-            shop_.base + "/spool", "--scratch", shop_.base + "/scratch"};
+    return {"serve",
+            "--coordinator",
+            address_,
+            "--codes",
+            codes(),
+            "--name",
+            "bench",
+            "--spool",
+            shop_.base + "/spool",
+            "--scratch",
+            shop_.base + "/scratch"};
   }
 
   // Starts the program; its output goes to files in our folder.

@@ -76,7 +76,10 @@ TEST(Roster, WakesWhoWaitsForASlotOrForQuiet) {
   Roster roster(1);
   roster.accept(grant(1), absl::ZeroDuration());
   EXPECT_FALSE(roster.wait_until_idle(absl::Milliseconds(1)));
-  std::thread later([&] { roster.ready({1, 1}); });
+  std::thread later([&] {
+    roster.ready({1, 1});
+    roster.wake();
+  });
   roster.wait_for_slot(absl::Hours(1));
   EXPECT_TRUE(roster.wait_until_idle(absl::Hours(1)));
   later.join();

@@ -46,7 +46,9 @@ bool eventually(const std::function<bool()>& holds, absl::Duration most) {
 Workshop::Workshop() : base(fresh_folder()) {}
 
 Workshop::~Workshop() {
-  if (thread_.joinable()) EXPECT_TRUE(stop().ok());
+  if (thread_.joinable()) {
+    EXPECT_TRUE(stop().ok());
+  }
   EXPECT_TRUE(eventually([this] { return processes() == 0; })) << processes() << " processes are left in " << base;
   while (waitpid(-1, nullptr, WNOHANG) > 0) continue;  // runners whose daemon was dropped
   std::error_code ignored;

@@ -22,8 +22,8 @@ class Workshop {
   Workshop();
   ~Workshop();
 
-  // Adds a code whose program is this shell script, run in the run's folder, where `case.in` sets x. Its output y is the
-  // first number after "Y=" in case.out. `gate` in the script stands for the path of the gate.
+  // Adds a code whose program is this shell script, run in the run's folder, where `case.in` sets x. Its output y is
+  // the first number after "Y=" in case.out. `gate` in the script stands for the path of the gate.
   code::Definition& add_code(const std::string& name, const std::string& script);
   // y = 2 x at once; waits for the gate first; ends with code 3.
   void add_usual_codes();
@@ -43,8 +43,8 @@ class Workshop {
 
   std::string attempt_file(const Key& key, const std::string& name) const;
   bool has_report(const Key& key) const { return files.exists(attempt_file(key, "report")); }
-  bool running(const Key& key) const;   // its simulation has begun, by its runner's record, and lives
-  int processes() const;                // whose working folder lies in ours
+  bool running(const Key& key) const;  // its simulation has begun, by its runner's record, and lives
+  int processes() const;               // whose working folder lies in ours
 
   const std::string base;
   code::Catalogue catalogue;
