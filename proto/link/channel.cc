@@ -41,7 +41,9 @@ absl::StatusOr<std::shared_ptr<grpc::Channel>> dial(const Address& address) {
   arguments.SetInt(GRPC_ARG_KEEPALIVE_PERMIT_WITHOUT_CALLS, 0);
   arguments.SetInt(GRPC_ARG_HTTP2_MAX_PINGS_WITHOUT_DATA, 0);  // a long poll sends no data, and is pinged all the same
   arguments.SetInt(GRPC_ARG_INITIAL_RECONNECT_BACKOFF_MS, 100);
-  arguments.SetInt(GRPC_ARG_MIN_RECONNECT_BACKOFF_MS, 1'000);
+  // How long one attempt to connect may take. Between calls the library looks at its sockets only every five seconds,
+  // and would give up attempts that had come through.
+  arguments.SetInt(GRPC_ARG_MIN_RECONNECT_BACKOFF_MS, 10'000);
   arguments.SetInt(GRPC_ARG_MAX_RECONNECT_BACKOFF_MS, 20'000);
   arguments.SetInt(GRPC_ARG_ENABLE_RETRIES, 0);             // ours know the request ids
   arguments.SetInt(GRPC_ARG_USE_LOCAL_SUBCHANNEL_POOL, 1);  // a new channel does not inherit another's back-off

@@ -107,7 +107,10 @@ void Ledger::turn(std::vector<Call> calls) {
 }
 
 void Ledger::take_turn(Call call, std::vector<Done>& done) {
-  if (call.gone && call.gone()) return;
+  if (call.gone && call.gone()) {  // nothing is done for it, but every call must be answered, or its server cannot end
+    done.push_back({std::move(call), absl::CancelledError("the caller hung up")});
+    return;
+  }
   Turn turn(*store_, *state_, now_, in_transaction_);
   absl::StatusOr<std::string> answer = decide(call, turn);
   in_transaction_ = turn.in_transaction();

@@ -211,7 +211,9 @@ absl::Status issue_asks(Turn& turn, const Asked& asked) {
     const study::Standing now = state.standing(*record, turn.now().wall);
     const study::Turn next = study::next_turn(now, asked.progress.converged, asked.dry, asked.progress.sentence, record->reason);
     if (next.state == v1::STUDY_STATE_UNSPECIFIED) break;
-    DROVER_TRY(change(turn, asked.study, next.state, next.reason, next.sentence));
+    // What made it finish stays its last word.
+    const std::string sentence = next.state == v1::STUDY_STATE_FINISHED ? record->sentence : next.sentence;
+    DROVER_TRY(change(turn, asked.study, next.state, next.reason, sentence));
   }
   return absl::OkStatus();
 }

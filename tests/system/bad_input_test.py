@@ -76,7 +76,7 @@ class WrongStudies(unittest.TestCase):
         code, out, err = self.lab.drover("start", path)
         self.assertEqual(code, 2, out + err)
         self.assertIn("taken", err)
-        self.assertEqual(len([s for s in self.lab.json("list")["studies"] if s["name"] == "taken"]), 1)
+        self.assertEqual(len([s for s in self.lab.json_lines("list") if s["name"] == "taken"]), 1)
 
     def test_a_study_that_is_not_there_names_the_nearest(self):
         path = self.lab.study(name="hillside", runs=2)

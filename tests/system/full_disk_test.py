@@ -20,7 +20,7 @@ class FullDisk(LabTest):
     def setUp(self):
         super().setUp()
         self.lab.data.mkdir(mode=0o700)
-        subprocess.run(["mount", "-t", "tmpfs", "-o", "size=3m,mode=0700", "tmpfs", self.lab.data], check=True)
+        subprocess.run(["mount", "-t", "tmpfs", "-o", "size=16m,mode=0700", "tmpfs", self.lab.data], check=True)
         self.addCleanup(subprocess.run, ["umount", "-l", self.lab.data])
 
     def test_stops_acknowledging_and_goes_on_when_there_is_space(self):

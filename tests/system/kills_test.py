@@ -50,20 +50,30 @@ class Kills(LabTest):
             self.lab.kill(self.lab.workers["w1"])
             self.lab.start_worker("w1", slots=2)
         self.expect_as_planned()
+        self.expect_lost(1)
         eventually(lambda: not processes_below(self.lab.folder / "spools"), "no simulation is left")
 
     def test_of_a_runner_make_the_run_wait_again(self):
         self.lab.wait_for_settled(5)
-        killed = 0
-        while killed < 2:
-            for runner in eventually(lambda: runners_of(self.lab.folder), "a run goes on"):
+        # One that was about to end anyway may have written its record already; so kill until two runs were hit.
+        while self.lost() < 2:
+            for runner in runners_of(self.lab.folder)[:1]:
                 try:
                     os.kill(runner, signal.SIGKILL)
-                    killed += 1
-                    break
                 except ProcessLookupError:
-                    continue
+                    pass
+            self.assertNotEqual(self.lab.state(), "finished", "the study ended before two runs were hit")
         self.expect_as_planned()
+
+    def lost(self):
+        store = self.lab.database()
+        lost = store.execute("SELECT count(*) FROM attempt WHERE state = 'lost'").fetchone()[0]
+        store.close()
+        return lost
+
+    def expect_lost(self, least):
+        """So many attempts really were lost on the way: else the kills hit nothing, and the test proved nothing."""
+        self.assertGreaterEqual(self.lost(), least)
 
     def test_of_everything_at_once(self):
         self.lab.wait_for_settled(10)

@@ -62,6 +62,7 @@ class Stub final : public Coordinator {
   absl::StatusOr<Answer> call(absl::Duration limit, Contexts& group, Call make) {
     grpc::ClientContext context;
     link::set_deadline(context, limit);
+    context.set_wait_for_ready(true);  // while a call waits, the channel connects as soon as that is possible
     {
       const std::lock_guard lock(mutex_);
       if (abandoned_) return absl::CancelledError("this worker is ending");
