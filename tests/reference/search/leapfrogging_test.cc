@@ -2,8 +2,11 @@
 //
 // Published tables of evaluation counts and success rates for the method were not found. The reference is an
 // independent program of the method as published (uniform random start; a leap out of the box leaps again from there,
-// at no cost), stopped at a cluster range of 1e-3 of the box in every variable, 1000 starts each. Ours starts evenly
-// spread and clips the box before the draw, so evaluations agree to some per cent, and success is as good or better.
+// at no cost), stopped at a cluster range of 1e-3 of the box in every variable, 1000 starts each.
+//
+// Ours starts evenly spread, which helps, and clips the mirrored box before the draw, which costs: beside a bound the
+// leaps get short before the swarm knows where to go. Measured over 1000 starts, success is at most 0.075 below the
+// reference (camel, 10 players: 0.869 for 0.943) and up to 0.08 above it (peaks, 20 players: 0.847 for 0.766).
 #include <gtest/gtest.h>
 
 #include <numbers>
@@ -66,12 +69,57 @@ std::vector<Row> table() {
   };
 }
 
+constexpr int kStarts = 300;
+constexpr double kCostOfClipping = 0.08;
+
 TEST(Leapfrogging, DoesAsWellAsTheReferenceOnSixFunctions) {
   for (const Row& row : table()) {
-    const Trials trials = try_out(row.problem, row.players, 1000);
-    EXPECT_GE(trials.success, 0.0);
+    const Trials trials = try_out(row.problem, row.players, kStarts);
     std::cout << "    reference: success " << row.success << ", evaluations " << row.evaluations << '\n';
+    // Three standard deviations of the difference between our share of 300 starts and the reference's of 1000.
+    const double chance = 3.0 * std::sqrt(row.success * (1.0 - row.success) * (1.0 / kStarts + 1.0 / 1000.0));
+    EXPECT_GE(trials.success, row.success - kCostOfClipping - chance) << row.problem.name << ", " << row.players;
+    // Mostly within 3 %; along Rosenbrock's valley the two differ by 10 %, and 300 starts by 2 % more.
+    EXPECT_NEAR(trials.evaluations / row.evaluations, 1.0, 0.15) << row.problem.name << ", " << row.players;
   }
+}
+
+// CEC 2006 (Liang et al., technical report), g08: two smooth constraints, 0.9 % of the box is feasible.
+TEST(Leapfrogging, FindsTheFeasibleOptimumOfG08) {
+  const double pi = std::numbers::pi;
+  // At 0 the published formula has no value; the box starts beside it.
+  const Problem g08{"g08",
+                    {from_to(1e-3, 10), from_to(1e-3, 10)},
+                    -0.0958250414180359,
+                    [pi](const Values& x) {
+                      return -std::pow(std::sin(2 * pi * x[0]), 3) * std::sin(2 * pi * x[1]) /
+                             (std::pow(x[0], 3) * (x[0] + x[1]));
+                    },
+                    [](const Values& x) {
+                      return std::max(0.0, x[0] * x[0] - x[1] + 1) + std::max(0.0, 1 - x[0] + (x[1] - 4) * (x[1] - 4));
+                    }};
+  EXPECT_NEAR(g08.value({1.22797135260752599, 4.24537336612274885}), g08.least, 1e-12);
+  EXPECT_EQ(g08.violation({1.22797135260752599, 4.24537336612274885}), 0.0);
+  // Measured 0.67 of 100 starts (the others end on other waves of the sines); three and a half standard deviations
+  // less.
+  EXPECT_GE(try_out(g08, 20, 100).success, 0.5);
+}
+
+// The same report, g24: the feasible set is two separate pieces and the optimum is in a corner of two constraints.
+TEST(Leapfrogging, FindsTheFeasibleOptimumOfG24) {
+  const Problem g24{"g24",
+                    {from_to(0, 3), from_to(0, 4)},
+                    -5.50801327159536,
+                    [](const Values& x) { return -x[0] - x[1]; },
+                    [](const Values& at) {
+                      const double x = at[0], y = at[1], x2 = x * x, x3 = x2 * x, x4 = x3 * x;
+                      return std::max(0.0, -2 * x4 + 8 * x3 - 8 * x2 + y - 2) +
+                             std::max(0.0, -4 * x4 + 32 * x3 - 88 * x2 + 96 * x + y - 36);
+                    }};
+  EXPECT_NEAR(g24.value({2.32952019747762, 3.17849307411774}), g24.least, 1e-12);
+  EXPECT_NEAR(g24.violation({2.32952019747762, 3.17849307411774}), 0.0, 1e-12);
+  // Measured 0.49 of 100 starts (the others end on the smaller piece or short of the corner); three less.
+  EXPECT_GE(try_out(g24, 20, 100).success, 0.34);
 }
 
 }  // namespace
