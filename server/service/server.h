@@ -52,7 +52,7 @@ class Server {
   ledger::Ledger& ledger() { return *ledger_; }
   const std::string& store_id() const { return store_id_; }
 
-  // Says that it serves no more, answers what waits, lets calls in flight end (for at most five seconds), writes all
+  // Says that it serves no more, answers what waits, lets calls in flight end (for at most a second), writes all
   // back. Idempotent.
   void drain();
 

@@ -1,7 +1,6 @@
 #include "process/survey.h"
 
 #include <fcntl.h>
-#include <sys/file.h>
 #include <unistd.h>
 
 #include "absl/strings/str_cat.h"
@@ -10,13 +9,17 @@
 namespace drover::process {
 namespace {
 
-// Whether somebody holds the lock. A file that is not there is held by nobody.
+// Whether somebody holds the lock, without taking it: a runner that starts at this moment must not find it taken. A file
+// that is not there is held by nobody.
 bool is_locked(const std::string& path) {
   const int file = open(path.c_str(), O_RDWR | O_CLOEXEC | O_NOFOLLOW);
   if (file < 0) return false;
-  const bool free = flock(file, LOCK_EX | LOCK_NB) == 0;
-  close(file);  // lets go of it
-  return !free;
+  struct flock whole {};
+  whole.l_type = F_WRLCK;
+  whole.l_whence = SEEK_SET;
+  const bool asked = fcntl(file, F_OFD_GETLK, &whole) == 0;
+  close(file);
+  return asked && whole.l_type != F_UNLCK;
 }
 
 absl::Status in_file(const absl::Status& status, const std::string& path) {

@@ -2,7 +2,6 @@
 
 #include <fcntl.h>
 #include <signal.h>
-#include <sys/file.h>
 #include <sys/prctl.h>
 #include <sys/resource.h>
 #include <sys/stat.h>
@@ -91,13 +90,22 @@ bool become_supervisor() {
   return true;
 }
 
+// A lock of the open file, which children inherit. Others can ask whether it is held without taking it for a moment
+// (F_OFD_GETLK), so that nobody who looks is ever in our way.
+bool lock(int file) {
+  struct flock whole {};
+  whole.l_type = F_WRLCK;
+  whole.l_whence = SEEK_SET;
+  return fcntl(file, F_OFD_SETLK, &whole) == 0;
+}
+
 bool open_all(Attempt& attempt) {
   attempt.folder = open(attempt.order.folder, O_RDONLY | O_DIRECTORY | O_CLOEXEC);
   if (attempt.folder < 0) return fail(attempt.order.folder);
   const int watch = openat(attempt.folder, "watch", O_RDWR | O_CREAT | O_CLOEXEC | O_NOFOLLOW, 0600);
-  if (watch < 0 || flock(watch, LOCK_EX | LOCK_NB) != 0) return fail("watch");
+  if (watch < 0 || !lock(watch)) return fail("watch");
   attempt.alive = openat(attempt.folder, "alive", O_RDWR | O_CREAT | O_NOFOLLOW, 0600);
-  if (attempt.alive < 0 || flock(attempt.alive, LOCK_EX | LOCK_NB) != 0) return fail("alive");
+  if (attempt.alive < 0 || !lock(attempt.alive)) return fail("alive");
   const char* const names[] = {"stdout", "stderr"};
   for (int i = 0; i < 2; ++i) {
     attempt.output[i] = openat(attempt.folder, names[i], O_WRONLY | O_CREAT | O_APPEND | O_CLOEXEC | O_NOFOLLOW, 0600);
