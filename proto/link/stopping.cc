@@ -14,11 +14,13 @@
 #include <cstring>
 #include <fstream>
 #include <iterator>
+#include <optional>
 #include <string>
 #include <thread>
 #include <utility>
 
 #include "absl/strings/str_cat.h"
+#include "link/clock.h"
 
 namespace drover::link {
 namespace {
@@ -66,7 +68,8 @@ class Descriptor {
 
 class SignalWatch final : public StopWatch {
  public:
-  SignalWatch(pid_t owner, Callback stop) : owner_(owner), stop_(std::move(stop)) {}
+  SignalWatch(pid_t owner, Callback stop, absl::Duration together)
+      : owner_(owner), stop_(std::move(stop)), together_(together) {}
   SignalWatch(const SignalWatch&) = delete;
   SignalWatch& operator=(const SignalWatch&) = delete;
   ~SignalWatch() override {
@@ -96,7 +99,12 @@ class SignalWatch final : public StopWatch {
 
   void take_signals() {
     signalfd_siginfo info{};
-    while (read(signals_.get(), &info, sizeof info) == sizeof info) say(StopCause::kSignal);
+    while (read(signals_.get(), &info, sizeof info) == sizeof info) {
+      const absl::Duration now = clock_.steady();
+      if (signalled_ && now - *signalled_ < together_) continue;
+      signalled_ = now;
+      say(StopCause::kSignal);
+    }
   }
 
   void watch() {
@@ -110,13 +118,16 @@ class SignalWatch final : public StopWatch {
       if (waiting[1].revents != 0) take_signals();
       if (watching_owner && owner_gone(waiting[2].revents != 0)) {
         watching_owner = false;
-        say(StopCause::kOwnerGone);
+        if (!signalled_) say(StopCause::kOwnerGone);
       }
     }
   }
 
   const pid_t owner_;
   const Callback stop_;
+  const absl::Duration together_;
+  const RealClock clock_;
+  std::optional<absl::Duration> signalled_;  // when the last counted signal came
   std::string owner_start_;
   int count_ = 0;
   Descriptor signals_, end_, owner_fd_;
@@ -131,8 +142,8 @@ void block_signals() {
   std::signal(SIGPIPE, SIG_IGN);
 }
 
-absl::StatusOr<std::unique_ptr<StopWatch>> StopWatch::start(pid_t owner, Callback stop) {
-  auto watch = std::make_unique<SignalWatch>(owner, std::move(stop));
+absl::StatusOr<std::unique_ptr<StopWatch>> StopWatch::start(pid_t owner, Callback stop, absl::Duration together) {
+  auto watch = std::make_unique<SignalWatch>(owner, std::move(stop), together);
   if (absl::Status status = watch->start(); !status.ok()) return status;
   return watch;
 }

@@ -4,7 +4,6 @@
 #include <sys/wait.h>
 #include <unistd.h>
 
-#include <chrono>
 #include <condition_variable>
 #include <csignal>
 #include <memory>
@@ -27,9 +26,9 @@ class Events {
       changed_.notify_all();
     };
   }
-  std::vector<std::pair<StopCause, int>> wait_for(std::size_t many) {
+  std::vector<std::pair<StopCause, int>> wait_for(std::size_t many, absl::Duration most = absl::Seconds(20)) {
     std::unique_lock lock(mutex_);
-    changed_.wait_for(lock, std::chrono::seconds(20), [&] { return seen_.size() >= many; });
+    changed_.wait_for(lock, absl::ToChronoNanoseconds(most), [&] { return seen_.size() >= many; });
     return seen_;
   }
 
@@ -73,7 +72,7 @@ class Owner {
 TEST(StopWatch, CountsSignals) {
   ASSERT_TRUE(kBlocked);
   Events events;
-  const auto watch = StopWatch::start(0, events.callback());
+  const auto watch = StopWatch::start(0, events.callback(), absl::ZeroDuration());
   ASSERT_TRUE(watch.ok());
   kill(getpid(), SIGTERM);
   EXPECT_EQ(events.wait_for(1).size(), 1u);
@@ -82,6 +81,18 @@ TEST(StopWatch, CountsSignals) {
   ASSERT_EQ(seen.size(), 2u);
   EXPECT_EQ(seen[0], std::pair(StopCause::kSignal, 1));
   EXPECT_EQ(seen[1], std::pair(StopCause::kSignal, 2));
+}
+
+TEST(StopWatch, TakesSignalsThatComeTogetherForOne) {
+  Owner owner;
+  Events events;
+  const auto watch = StopWatch::start(owner.pid(), events.callback(), absl::Hours(1));
+  ASSERT_TRUE(watch.ok());
+  kill(getpid(), SIGINT);
+  EXPECT_EQ(events.wait_for(1).size(), 1u);
+  kill(getpid(), SIGTERM);
+  owner.finish();
+  EXPECT_EQ(events.wait_for(2, absl::Milliseconds(200)).size(), 1u) << "the owner's end says nothing new either";
 }
 
 TEST(StopWatch, SeesItsOwnerEndBeforeAnybodyReapsIt) {
