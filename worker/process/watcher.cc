@@ -25,6 +25,11 @@ absl::Status errno_status(const std::string& what) {
   return error == ESRCH ? absl::NotFoundError(text) : absl::UnavailableError(text);
 }
 
+constexpr std::uint64_t kWake = 0;
+
+// Entries have numbers of their own. A pidfd's number comes again as soon as it is closed, and an event of the old one
+// may still come then: a child that is being spawned holds copies of our descriptors until its exec, so that closing
+// one does not take it out of the epoll set.
 class EpollWatcher final : public Watcher {
  public:
   EpollWatcher(int epoll, int wake) : epoll_(epoll), wake_(wake), thread_([this] { loop(); }) {}
@@ -34,7 +39,7 @@ class EpollWatcher final : public Watcher {
     while (write(wake_, &one, sizeof(one)) < 0 && errno == EINTR) {
     }
     thread_.join();
-    for (const auto& [file, entry] : watched_) close(file);
+    for (const auto& [number, entry] : watched_) close(entry.file);
     close(epoll_);
     close(wake_);
   }
@@ -43,17 +48,19 @@ class EpollWatcher final : public Watcher {
     const int file = static_cast<int>(syscall(SYS_pidfd_open, pid, 0));
     if (file < 0) return errno_status(absl::StrCat("process ", pid));
     const std::lock_guard lock(mutex_);
-    watched_[file] = {pid, std::move(gone)};
-    epoll_event event{.events = EPOLLIN, .data = {.fd = file}};
+    const std::uint64_t number = ++last_number_;
+    watched_[number] = {file, pid, std::move(gone)};
+    epoll_event event{.events = EPOLLIN, .data = {.u64 = number}};
     if (epoll_ctl(epoll_, EPOLL_CTL_ADD, file, &event) == 0) return absl::OkStatus();
     const absl::Status failed = errno_status("epoll");
-    watched_.erase(file);
+    watched_.erase(number);
     close(file);
     return failed;
   }
 
  private:
   struct Entry {
+    int file = -1;
     pid_t pid = 0;
     std::function<void()> gone;
   };
@@ -63,31 +70,33 @@ class EpollWatcher final : public Watcher {
     while (true) {
       const int count = epoll_wait(epoll_, events.data(), static_cast<int>(events.size()), -1);
       for (int i = 0; i < count; ++i) {
-        const int file = events[static_cast<std::size_t>(i)].data.fd;
-        if (file == wake_) return;
-        ended(file);
+        const std::uint64_t number = events[static_cast<std::size_t>(i)].data.u64;
+        if (number == kWake) return;
+        ended(number);
       }
     }
   }
 
-  void ended(int file) {
+  void ended(std::uint64_t number) {
     Entry entry;
     {
       const std::lock_guard lock(mutex_);
-      const auto at = watched_.find(file);
+      const auto at = watched_.find(number);
       if (at == watched_.end()) return;
       entry = std::move(at->second);
       watched_.erase(at);
     }
-    close(file);  // takes it out of the epoll set, too
+    epoll_ctl(epoll_, EPOLL_CTL_DEL, entry.file, nullptr);
+    close(entry.file);
     waitpid(entry.pid, nullptr, WNOHANG);
     entry.gone();
   }
 
   int epoll_, wake_;
   std::mutex mutex_;
-  std::map<int, Entry> watched_;  // by pidfd
-  std::thread thread_;            // last: it uses all of the above
+  std::uint64_t last_number_ = kWake;
+  std::map<std::uint64_t, Entry> watched_;
+  std::thread thread_;  // last: it uses all of the above
 };
 
 }  // namespace
@@ -96,7 +105,7 @@ absl::StatusOr<std::unique_ptr<Watcher>> Watcher::start() {
   const int epoll = epoll_create1(EPOLL_CLOEXEC);
   if (epoll < 0) return errno_status("epoll");
   const int wake = eventfd(0, EFD_CLOEXEC);
-  epoll_event event{.events = EPOLLIN, .data = {.fd = wake}};
+  epoll_event event{.events = EPOLLIN, .data = {.u64 = kWake}};
   if (wake < 0 || epoll_ctl(epoll, EPOLL_CTL_ADD, wake, &event) != 0) {
     const absl::Status failed = errno_status("eventfd");
     if (wake >= 0) close(wake);
