@@ -100,7 +100,7 @@ TEST(Leapfrogging, FindsTheFeasibleOptimumOfG08) {
                     }};
   EXPECT_NEAR(g08.value({1.22797135260752599, 4.24537336612274885}), g08.least, 1e-12);
   EXPECT_EQ(g08.violation({1.22797135260752599, 4.24537336612274885}), 0.0);
-  // Measured 0.67 of 100 starts (the others end on other waves of the sines); three and a half standard deviations
+  // Measured 0.67 of 100 starts (most others end on another wave of the sines); three and a half standard deviations
   // less.
   EXPECT_GE(try_out(g08, 20, 100).success, 0.5);
 }
