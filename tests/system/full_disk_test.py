@@ -32,11 +32,10 @@ class FullDisk(LabTest):
         ballast = self.lab.data / "ballast"
         self.assertEqual(self.lab.drover("start", study)[0], 0)
         self.lab.wait_for_settled(3)
-        with open(ballast, "wb") as file:
+        with open(ballast, "wb", buffering=0) as file:
             try:
                 while True:
                     file.write(b"\0" * 4096)
-                    file.flush()
             except OSError:
                 pass
         log = self.lab.folder / "coordinator.log"
