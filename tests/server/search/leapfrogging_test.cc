@@ -103,6 +103,7 @@ TEST(Leapfrogging, DrawsTheLeapUniformlyFromTheWholeBox) {
     OneLine line(make_space({real(0, 1)}), of(8, seed), [](double x) { return std::abs(x - 0.5); });
     const double far = std::clamp(2.0 * line.best() - line.worst(), 0.0, 1.0);
     const double r = (line.best() - line.method().next(1, NoHistory()).at(0).point[0]) / (line.best() - far);
+    ASSERT_TRUE(r >= 0.0 && r < 1.0) << r;
     ++cells[static_cast<std::size_t>(r * 10.0)];
   }
   for (const int count : cells) EXPECT_NEAR(count, 400, 95);
