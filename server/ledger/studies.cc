@@ -51,6 +51,8 @@ v1::Study shown(Turn& turn, const StudyRecord& record) {
   study.set_sentence(record.sentence);
   study.set_revision(turn.store().head().number);
   *study.mutable_spec() = record.spec;
+  study.set_slots(turn.state().book.slots_for(record.id));
+  study.set_workers_busy(turn.state().book.busy_workers(record.id));
   return study;
 }
 
