@@ -83,6 +83,12 @@ absl::StatusOr<Space> Space::make(std::vector<Variable> variables, std::vector<d
       if (!std::isfinite(value)) return absl::InvalidArgumentError("the baseline has a value that is not finite");
     }
     space.baseline_ = space.from_user(baseline);
+    for (std::size_t i = 0; i < baseline.size(); ++i) {
+      const Variable& variable = space.variables_[i];
+      const bool real = variable.kind == Kind::kReal;
+      space.baseline_values_.push_back(real ? std::clamp(baseline[i], variable.low, variable.high)
+                                            : space.to_user(i, space.baseline_[i]));
+    }
   }
   return space;
 }
@@ -131,6 +137,8 @@ double Space::to_user(std::size_t i, double coordinate) const {
 }
 
 std::vector<double> Space::to_user(const Point& point) const {
+  // Today's design has the numbers that were given for it, whatever a logarithm there and back makes of them.
+  if (!baseline_.empty() && point == baseline_) return baseline_values_;
   std::vector<double> values(point.size());
   for (std::size_t i = 0; i < point.size(); ++i) values[i] = to_user(i, point[i]);
   return values;

@@ -55,6 +55,7 @@ class Space {
   double at_level(std::size_t i, std::int64_t level) const;
 
   // In the user's units, on the step; never outside the bounds. A choice gives its index.
+  // Of the baseline exactly the numbers that were given for it.
   std::vector<double> to_user(const Point& point) const;
   double to_user(std::size_t i, double coordinate) const;
   // The inverse. `values` outside the bounds are moved to the nearer bound.
@@ -72,6 +73,7 @@ class Space {
   std::vector<Variable> variables_;
   std::vector<std::int64_t> levels_;
   Point baseline_;
+  std::vector<double> baseline_values_;
   bool discrete_ = false;
   std::int64_t count_ = 0;
 };

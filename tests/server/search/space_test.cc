@@ -156,5 +156,12 @@ TEST(Space, HasAFingerprintOfEverythingThatItIs) {
   EXPECT_EQ(make_space({real(0, 1)}, {0.5}).fingerprint(), make_space({real(0, 1)}, {0.5}).fingerprint());
 }
 
+TEST(Space, GivesTheBaselineItsOwnNumbers) {
+  // 8 on a logarithm from 3 to 30 is no exact coordinate.
+  const auto space = Space::make({{.low = 3.0, .high = 30.0, .scale = Scale::kLog}, {.low = 0.35, .high = 0.8}}, {8.0, 0.5});
+  ASSERT_TRUE(space.ok());
+  EXPECT_EQ(space->to_user(space->baseline()), (std::vector<double>{8.0, 0.5}));
+}
+
 }  // namespace
 }  // namespace drover::search
