@@ -11,6 +11,7 @@
 #include "status/try.h"
 #include "study/asking.h"
 #include "study/bytes.h"
+#include "study/cells.h"
 
 namespace drover::ledger {
 namespace {
@@ -111,12 +112,7 @@ class Learners::Learner {
       DROVER_ASSIGN(reader_, store::Reader::open(folder_));
     }
     DROVER_ASSIGN(const store::SearchRow row, reader_->search(study_));
-    std::vector<study::CellValues> cells;
-    for (const study::Cell& cell : row.cells) {
-      study::CellValues& values = cells.emplace_back();
-      DROVER_ASSIGN(values.values, study::unpack_doubles(cell.values()));
-      DROVER_ASSIGN(values.weight, study::unpack_double(cell.weight()));
-    }
+    DROVER_ASSIGN(const std::vector<study::CellValues> cells, study::unpack_cells(row.cells));
     DROVER_ASSIGN(plan_, study::StudyPlan::make(row.spec, row.codes, cells));
     DROVER_ASSIGN(method_, search::make_method(plan_->space(), plan_->settings()));
     history_.emplace(*reader_, *plan_, study_);

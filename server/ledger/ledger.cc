@@ -5,7 +5,6 @@
 #include <utility>
 
 #include "absl/strings/str_cat.h"
-#include "ledger/durations.h"
 #include "status/try.h"
 
 namespace drover::ledger {

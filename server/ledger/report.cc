@@ -4,7 +4,6 @@
 #include <utility>
 
 #include "absl/strings/str_cat.h"
-#include "ledger/durations.h"
 #include "ledger/handlers.h"
 #include "status/try.h"
 

@@ -7,6 +7,7 @@
 #include "ledger/durations.h"
 #include "status/try.h"
 #include "study/bytes.h"
+#include "study/cells.h"
 
 namespace drover::ledger {
 
@@ -134,12 +135,7 @@ absl::Status State::add_study(StudyRecord record, const std::vector<study::Cell>
     if (definition == nullptr) return absl::InternalError(absl::StrCat("code ", use.digest(), " is not in the store"));
     definitions.push_back(*definition);
   }
-  std::vector<study::CellValues> values;
-  for (const study::Cell& cell : cells) {
-    study::CellValues& one = values.emplace_back();
-    DROVER_ASSIGN(one.values, study::unpack_doubles(cell.values()));
-    DROVER_ASSIGN(one.weight, study::unpack_double(cell.weight()));
-  }
+  DROVER_ASSIGN(const std::vector<study::CellValues> values, study::unpack_cells(cells));
   DROVER_ASSIGN(record.plan, study::StudyPlan::make(record.spec, definitions, values));
   dispatch::Study booked{.id = record.id, .priority = record.spec.priority(), .granting = grants(record.state)};
   booked.tags.assign(record.spec.tags().begin(), record.spec.tags().end());

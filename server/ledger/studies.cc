@@ -2,10 +2,10 @@
 #include <utility>
 
 #include "absl/strings/str_cat.h"
-#include "absl/strings/str_join.h"
 #include "ledger/handlers.h"
 #include "status/try.h"
 #include "study/bytes.h"
+#include "study/cells.h"
 #include "study/spec_check.h"
 
 namespace drover::ledger {
@@ -76,12 +76,7 @@ study::StudyStarted started(const v1::StartStudyRequest& request, const study::C
   started.set_study(id);
   started.set_owner(request.owner());
   *started.mutable_spec() = checked.effective;
-  for (std::size_t i = 0; i < checked.cells.size(); ++i) {
-    study::Cell& cell = *started.add_cells();
-    cell.set_condition(static_cast<std::int32_t>(i));
-    cell.set_values(study::pack_doubles(checked.cells[i].values));
-    cell.set_weight(study::pack_double(checked.cells[i].weight));
-  }
+  for (study::Cell& cell : study::pack_cells(checked.cells)) *started.add_cells() = std::move(cell);
   if (checked.effective.search().order() == v1::ORDER_CANDIDATE) started.set_window(checked.effective.search().look_ahead());
   started.set_fingerprint(settings.fingerprint);
   started.set_seed(checked.effective.search().seed());

@@ -5,7 +5,7 @@
 
 #include "absl/strings/str_cat.h"
 #include "status/try.h"
-#include "study/bytes.h"
+#include "study/cells.h"
 
 namespace drover::service {
 
@@ -20,12 +20,7 @@ absl::StatusOr<std::shared_ptr<const study::StudyPlan>> Plans::of(const store::S
   }
   DROVER_ASSIGN(const std::vector<v1::CodeDefinition> codes, reader.codes(row.id));
   DROVER_ASSIGN(const std::vector<study::Cell> stored, reader.cells(row.id));
-  std::vector<study::CellValues> cells;
-  for (const study::Cell& cell : stored) {
-    study::CellValues& values = cells.emplace_back();
-    DROVER_ASSIGN(values.values, study::unpack_doubles(cell.values()));
-    DROVER_ASSIGN(values.weight, study::unpack_double(cell.weight()));
-  }
+  DROVER_ASSIGN(const std::vector<study::CellValues> cells, study::unpack_cells(stored));
   absl::StatusOr<std::unique_ptr<study::StudyPlan>> made = study::StudyPlan::make(row.spec, codes, cells);
   if (!made.ok()) {
     return absl::DataLossError(absl::StrCat("the stored spec of study ", row.name, " makes no plan: ",

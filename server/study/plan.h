@@ -107,6 +107,8 @@ class StudyPlan {
  private:
   struct Parts;
   explicit StudyPlan(std::unique_ptr<Parts> parts);
+  // Objectives, constraints and verdict from the means of each cell.
+  CandidateScore judge(CandidateScore score, const std::vector<std::vector<double>>& means) const;
   std::unique_ptr<Parts> parts_;
 };
 

@@ -2,6 +2,7 @@
 #include <algorithm>
 #include <cmath>
 #include <utility>
+#include <variant>
 
 #include "absl/strings/str_cat.h"
 #include "absl/strings/str_join.h"
@@ -45,33 +46,55 @@ double across_cells(std::span<const double> values, std::span<const double> weig
                            [&](double a, double b) { return excess(limits, a) < excess(limits, b); });
 }
 
-// The numbers of a cell: the mean over replicates.
+// Adds element by element; an empty sum takes the size of what comes first.
 void add_to(std::vector<double>& sum, std::span<const double> numbers) {
   if (sum.empty()) sum.assign(numbers.size(), 0.0);
   for (std::size_t i = 0; i < numbers.size(); ++i) sum[i] += numbers[i];
 }
 
+struct Failure {
+  v1::FailureKind kind = v1::FAILURE_KIND_UNSPECIFIED;
+  std::string reason;
+};
+
+// What one run gives to objectives and constraints, or why it gives nothing.
+std::variant<std::vector<double>, Failure> measure_run(const Measuring& measuring, std::span<const double> values,
+                                                       std::span<const double> conditions, const v1::AttemptReport& report) {
+  if (report.ending() == v1::ENDING_FAILED) return Failure{report.failure(), report.reason()};
+  if (report.ending() == v1::ENDING_BOUNDED) {
+    return Failure{v1::FAILURE_KIND_CHECK, absl::StrCat("stopped early: ", report.reason())};
+  }
+  const absl::StatusOr<std::vector<double>> numbers = measuring.numbers(values, conditions, report);
+  if (!numbers.ok()) return Failure{v1::FAILURE_KIND_CHECK, std::string(numbers.status().message())};
+  std::vector<double> seen;
+  for (const Measure& measure : measuring.objectives()) seen.push_back(measure.of(*numbers));
+  for (const Measure& measure : measuring.constraints()) seen.push_back(measure.of(*numbers));
+  return seen;
+}
+
+// "condition 2 (river_flow = 0.35 m3/s): "; empty for a study without conditions.
+std::string condition_text(int cell, std::span<const v1::NamedValue> values) {
+  std::vector<std::string> given;
+  for (const v1::NamedValue& value : values) {
+    given.push_back(absl::StrCat(value.name(), " = ", number_text(value.number()), value.unit().empty() ? "" : " ", value.unit()));
+  }
+  return given.empty() ? "" : absl::StrCat("condition ", cell + 1, " (", absl::StrJoin(given, ", "), "): ");
+}
+
+std::vector<double> column(const std::vector<std::vector<double>>& means, std::size_t index) {
+  std::vector<double> numbers;
+  for (const std::vector<double>& cell : means) numbers.push_back(cell[index]);
+  return numbers;
+}
+
 }  // namespace
 
 CandidateScore StudyPlan::score(std::span<const double> values, std::span<const RunResult> runs) const {
-  const Parts& p = *parts_;
   CandidateScore score;
   double cost_s = 0.0;
   bool withdrawn = false;
   std::vector<std::vector<double>> means;  // by cell: objectives, then constraints
-  const auto fail = [&](int cell, v1::FailureKind kind, const std::string& why) {
-    if (score.verdict() == v1::CANDIDATE_VERDICT_FAILED) return;
-    score.set_verdict(v1::CANDIDATE_VERDICT_FAILED);
-    score.set_failure(kind);
-    std::vector<std::string> given;
-    for (const v1::NamedValue& value : condition_values(cell)) {
-      given.push_back(absl::StrCat(value.name(), " = ", number_text(value.number()), value.unit().empty() ? "" : " ",
-                                   value.unit()));
-    }
-    const std::string where = given.empty() ? "" : absl::StrCat("condition ", cell + 1, " (", absl::StrJoin(given, ", "), "): ");
-    score.set_reason(where + why);
-  };
-  for (int cell = 0; cell < static_cast<int>(p.cells.size()); ++cell) {
+  for (int cell = 0; cell < static_cast<int>(parts_->cells.size()); ++cell) {
     std::vector<double> sum;
     for (int replicate = 0; replicate < replicates(); ++replicate) {
       const v1::AttemptReport* const report = report_of(runs, cell, replicate);
@@ -80,24 +103,15 @@ CandidateScore StudyPlan::score(std::span<const double> values, std::span<const 
         continue;
       }
       cost_s += seconds(report->usage().wall());
-      if (report->ending() == v1::ENDING_FAILED) {
-        fail(cell, report->failure(), report->reason());
-        continue;
+      const auto seen = measure_run(parts_->measuring, values, parts_->cells[static_cast<std::size_t>(cell)].values, *report);
+      if (const auto* const numbers = std::get_if<std::vector<double>>(&seen)) {
+        add_to(sum, *numbers);
+      } else if (score.verdict() != v1::CANDIDATE_VERDICT_FAILED) {  // the first one is told
+        const Failure& failure = std::get<Failure>(seen);
+        score.set_verdict(v1::CANDIDATE_VERDICT_FAILED);
+        score.set_failure(failure.kind);
+        score.set_reason(condition_text(cell, condition_values(cell)) + failure.reason);
       }
-      if (report->ending() == v1::ENDING_BOUNDED) {
-        fail(cell, v1::FAILURE_KIND_CHECK, absl::StrCat("stopped early: ", report->reason()));
-        continue;
-      }
-      const absl::StatusOr<std::vector<double>> numbers =
-          p.measuring.numbers(values, p.cells[static_cast<std::size_t>(cell)].values, *report);
-      if (!numbers.ok()) {
-        fail(cell, v1::FAILURE_KIND_CHECK, std::string(numbers.status().message()));
-        continue;
-      }
-      std::vector<double> seen;
-      for (const Measure& measure : p.measuring.objectives()) seen.push_back(measure.of(*numbers));
-      for (const Measure& measure : p.measuring.constraints()) seen.push_back(measure.of(*numbers));
-      add_to(sum, seen);
     }
     for (double& number : sum) number /= replicates();
     means.push_back(std::move(sum));
@@ -108,15 +122,15 @@ CandidateScore StudyPlan::score(std::span<const double> values, std::span<const 
     score.set_verdict(v1::CANDIDATE_VERDICT_WITHDRAWN);
     return score;
   }
-  const auto column = [&](std::size_t index) {
-    std::vector<double> numbers;
-    for (const std::vector<double>& cell : means) numbers.push_back(cell[index]);
-    return numbers;
-  };
+  return judge(std::move(score), means);
+}
+
+CandidateScore StudyPlan::judge(CandidateScore score, const std::vector<std::vector<double>>& means) const {
+  const Parts& p = *parts_;
   std::vector<double> objectives, constraints, violations;
   for (int i = 0; i < p.spec.objectives_size(); ++i) {
     const v1::Objective& objective = p.spec.objectives(i);
-    const double value = across_cells(column(static_cast<std::size_t>(i)), p.weights, objective);
+    const double value = across_cells(column(means, static_cast<std::size_t>(i)), p.weights, objective);
     objectives.push_back(objective.sense() == v1::SENSE_MAXIMISE ? -value : value);
   }
   double violation = 0.0;
@@ -124,7 +138,7 @@ CandidateScore StudyPlan::score(std::span<const double> values, std::span<const 
     const v1::Constraint& constraint = p.spec.constraints(i);
     const Limits& limits = p.limits[static_cast<std::size_t>(i)];
     const auto index = static_cast<std::size_t>(p.spec.objectives_size() + i);
-    const double value = across_cells(column(index), p.weights, constraint, limits);
+    const double value = across_cells(column(means, index), p.weights, constraint, limits);
     const double scale = constraint.scale() > 0.0 ? constraint.scale() : usual_scale(constraint);
     constraints.push_back(value);
     violations.push_back(std::max(0.0, excess(limits, value)) / scale);
