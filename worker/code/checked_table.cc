@@ -9,28 +9,32 @@
 namespace drover::code {
 namespace {
 
-// Levenshtein (1966): insertions, deletions and changes that turn one text into the other.
+// Insertions, deletions, changes and swaps of neighbours that turn one text into the other (Damerau 1964,
+// Communications of the ACM 7, 171-176, no part edited twice).
 std::size_t distance(std::string_view a, std::string_view b) {
-  std::vector<std::size_t> row(b.size() + 1);
-  std::iota(row.begin(), row.end(), std::size_t{0});
+  std::vector<std::vector<std::size_t>> rows(a.size() + 1, std::vector<std::size_t>(b.size() + 1));
+  std::iota(rows[0].begin(), rows[0].end(), std::size_t{0});
   for (std::size_t i = 1; i <= a.size(); ++i) {
-    std::size_t diagonal = row[0];
-    row[0] = i;
+    rows[i][0] = i;
     for (std::size_t j = 1; j <= b.size(); ++j) {
-      const std::size_t changed = diagonal + (a[i - 1] == b[j - 1] ? 0 : 1);
-      diagonal = row[j];
-      row[j] = std::min({changed, row[j] + 1, row[j - 1] + 1});
+      const std::size_t changed = rows[i - 1][j - 1] + (a[i - 1] == b[j - 1] ? 0 : 1);
+      rows[i][j] = std::min({changed, rows[i - 1][j] + 1, rows[i][j - 1] + 1});
+      const bool swapped = i > 1 && j > 1 && a[i - 1] == b[j - 2] && a[i - 2] == b[j - 1];
+      if (swapped) rows[i][j] = std::min(rows[i][j], rows[i - 2][j - 2] + 1);
     }
   }
-  return row[b.size()];
+  return rows[a.size()][b.size()];
 }
 
 }  // namespace
 
 std::string nearest(std::string_view text, const std::vector<std::string>& names) {
   std::string best;
-  std::size_t least = std::max<std::size_t>(2, text.size() / 2);
+  constexpr std::size_t kLongest = 100;  // no slip of the fingers is longer
+  if (text.size() > kLongest) return best;
+  std::size_t least = text.size() / 3 + 1;
   for (const std::string& name : names) {
+    if (name.size() > kLongest) continue;
     const std::size_t apart = distance(text, name);
     if (apart >= least) continue;
     least = apart;
