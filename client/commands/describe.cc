@@ -182,9 +182,11 @@ std::string describe(const v1::Study& study, absl::Time now, const screen::Scree
   if (study.has_mean_run_time()) {
     table.add({"a run takes", link::human(link::from_proto(study.mean_run_time())) + " on average"});
   }
-  const std::string slots = screen::counted(study.slots(), "slot", "slots");
-  table.add({"workers", study.slots() == 0 ? "none that could run it"
-                                           : absl::StrCat(study.workers_busy(), " busy with it, ", slots, " in all")});
+  if (!is_over(study.state())) {
+    const std::string slots = screen::counted(study.slots(), "slot", "slots");
+    table.add({"workers", study.slots() == 0 ? "none that could run it"
+                                             : absl::StrCat(study.workers_busy(), " busy with it, ", slots, " in all")});
+  }
   if (study.attempts_lost() > 0) {
     table.add({"attempts lost", absl::StrCat(screen::whole(study.attempts_lost()), " (their runs wait again)")});
   }

@@ -35,7 +35,8 @@ struct StartSettings {
   std::uint64_t fresh_seed = 0;
   std::string fingerprint;  // of this machine
 };
-// Each answers with the study as it left it, without counts, best and figures: those are read.
+// Each answers with the study as it left it, with the counts of its open runs; the best design and what is settled are
+// read.
 absl::StatusOr<v1::Study> start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings);
 absl::StatusOr<v1::Study> pause_study(Turn& turn, const std::string& name);
 absl::StatusOr<v1::Study> resume_study(Turn& turn, const std::string& name);

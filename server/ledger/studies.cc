@@ -1,4 +1,6 @@
 // Starting, pausing, resuming and stopping a study, and what its own thread hands in.
+#include <algorithm>
+#include <map>
 #include <utility>
 
 #include "absl/strings/str_cat.h"
@@ -42,6 +44,31 @@ absl::StatusOr<StudyRecord*> open_study(Turn& turn, const std::string& name, con
                  absl::StrCat("study ", name, " has come to its end; there is nothing to ", what));
 }
 
+// A run is what its newest attempt is that has not been given up; without one it waits.
+void count_open(Turn& turn, std::int64_t study, v1::RunCounts& counts) {
+  using State = dispatch::Attempt::State;
+  std::map<State, std::int64_t> states;
+  std::int64_t waiting = 0, set_aside = 0;
+  for (const std::int64_t id : turn.state().book.open_runs(study)) {
+    const dispatch::Run& run = *turn.state().book.run(id);
+    const auto newest = std::find_if(run.attempts.rbegin(), run.attempts.rend(),
+                                     [](const auto& entry) { return !entry.second.released; });
+    if (run.set_aside) {
+      ++set_aside;
+    } else if (newest == run.attempts.rend()) {
+      ++waiting;
+    } else {
+      ++states[newest->second.state];
+    }
+  }
+  counts.set_waiting(waiting);
+  counts.set_set_aside(set_aside);
+  counts.set_granted(states[State::kGranted]);
+  counts.set_begun(states[State::kBegun]);
+  counts.set_parked(states[State::kParked]);
+  counts.set_stopping(states[State::kStopping]);
+}
+
 v1::Study shown(Turn& turn, const StudyRecord& record) {
   v1::Study study;
   study.set_name(record.name);
@@ -51,6 +78,7 @@ v1::Study shown(Turn& turn, const StudyRecord& record) {
   study.set_sentence(record.sentence);
   study.set_revision(turn.store().head().number);
   *study.mutable_spec() = record.spec;
+  count_open(turn, record.id, *study.mutable_runs());
   study.set_slots(turn.state().book.slots_for(record.id));
   study.set_workers_busy(turn.state().book.busy_workers(record.id));
   return study;

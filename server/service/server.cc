@@ -96,7 +96,11 @@ absl::Status Server::listen(const ServerOptions& options) {
 
 void Server::say_serving(bool serving) {
   if (server_ == nullptr) return;
-  server_->GetHealthCheckService()->SetServingStatus(serving);
+  grpc::HealthCheckServiceInterface& health = *server_->GetHealthCheckService();
+  health.SetServingStatus(serving);  // the whole
+  for (const char* const name : {v1::Work::service_full_name(), v1::Studies::service_full_name()}) {
+    health.SetServingStatus(name, serving);
+  }
 }
 
 Server::~Server() { drain(); }
