@@ -1,13 +1,13 @@
 #include "configuration.h"
 
+#include <toml++/toml.h>
+
 #include <filesystem>
 #include <limits>
 #include <optional>
 #include <sstream>
 #include <utility>
 #include <vector>
-
-#include <toml++/toml.h>
 
 #include "absl/strings/str_cat.h"
 #include "absl/strings/str_join.h"
@@ -44,15 +44,18 @@ absl::Status read_licences(const std::string& path, const toml::table& table, Co
 
 absl::Status read_times(const std::string& path, const toml::table& table, Configuration& read) {
   dispatch::Times& times = read.times;
-  const std::vector<std::pair<std::string, absl::Duration*>> fields = {
-      {"renew_every", &times.renew_every}, {"lease", &times.lease},
-      {"grace", &times.grace},             {"patience", &times.patience},
-      {"retry_first", &times.retry_first}, {"retry_most", &times.retry_most},
-      {"longest_poll", &times.longest_poll}};
+  const std::vector<std::pair<std::string, absl::Duration*>> fields = {{"renew_every", &times.renew_every},
+                                                                       {"lease", &times.lease},
+                                                                       {"grace", &times.grace},
+                                                                       {"patience", &times.patience},
+                                                                       {"retry_first", &times.retry_first},
+                                                                       {"retry_most", &times.retry_most},
+                                                                       {"longest_poll", &times.longest_poll}};
   std::vector<std::string> known;
   for (const auto& [name, field] : fields) known.push_back(name);
   for (const auto& [key, value] : table) {
-    const auto at = std::find_if(fields.begin(), fields.end(), [&](const auto& field) { return field.first == key.str(); });
+    const auto at =
+        std::find_if(fields.begin(), fields.end(), [&](const auto& field) { return field.first == key.str(); });
     if (at == fields.end()) return unknown_key(path, key, known);
     const std::optional<std::string> text = value.value_exact<std::string>();
     const absl::StatusOr<absl::Duration> span = link::parse_duration(text.value_or(""));

@@ -1,14 +1,13 @@
 // drover-coordinator: keeps studies and hands their runs to workers.
+#include <spdlog/spdlog.h>
 #include <unistd.h>
 
+#include <CLI/CLI.hpp>
 #include <cstdlib>
 #include <future>
 #include <iostream>
 #include <memory>
 #include <string>
-
-#include <CLI/CLI.hpp>
-#include <spdlog/spdlog.h>
 
 #include "configuration.h"
 #include "link/address.h"
@@ -96,7 +95,8 @@ int serve(const Options& options) {
       });
   if (!watch.ok()) return refuse(watch.status());
   if (options.trust_host) spdlog::warn("everybody on this host is trusted (--trust-everyone-on-this-host)");
-  if (options.allow_network_file_system) spdlog::warn("a network file system is allowed; locks and syncs may fail there");
+  if (options.allow_network_file_system)
+    spdlog::warn("a network file system is allowed; locks and syncs may fail there");
   spdlog::info("serving address={} data={} store={} term={}", (*server)->address().text(), options.data,
                (*server)->store_id(), (*server)->ledger().coordinator().term());
   stop.get_future().wait();
@@ -106,14 +106,17 @@ int serve(const Options& options) {
 }
 
 int run(int argc, char** argv) {
-  CLI::App app("Keeps Drover's studies and hands their runs to workers.\n\n"
-               "  drover-coordinator serve --data /var/lib/drover\n");
+  CLI::App app(
+      "Keeps Drover's studies and hands their runs to workers.\n\n"
+      "  drover-coordinator serve --data /var/lib/drover\n");
   app.set_version_flag("--version", DROVER_VERSION);
   app.require_subcommand(1);
   Options options;
   CLI::App* const command = app.add_subcommand("serve", "Serve until SIGTERM");
-  command->add_option("--data", options.data, "Folder of the store, on a local disk; made where there is none")->required();
-  command->add_option("--listen", options.listen, "unix:/path, or 127.0.0.1:port (0: any free one)")->capture_default_str();
+  command->add_option("--data", options.data, "Folder of the store, on a local disk; made where there is none")
+      ->required();
+  command->add_option("--listen", options.listen, "unix:/path, or 127.0.0.1:port (0: any free one)")
+      ->capture_default_str();
   command->add_option("--config", options.config, "TOML file with [licences] and [times]");
   command->add_flag("--trust-everyone-on-this-host", options.trust_host, "Needed to listen on a TCP port");
   command->add_flag("--allow-network-file-system", options.allow_network_file_system,

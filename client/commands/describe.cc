@@ -184,8 +184,9 @@ std::string describe(const v1::Study& study, absl::Time now, const screen::Scree
   }
   if (!is_over(study.state())) {
     const std::string slots = screen::counted(study.slots(), "slot", "slots");
-    table.add({"workers", study.slots() == 0 ? "none that could run it"
-                                             : absl::StrCat(study.workers_busy(), " busy with it, ", slots, " in all")});
+    table.add({"workers", study.slots() == 0
+                              ? "none that could run it"
+                              : absl::StrCat(study.workers_busy(), " busy with it, ", slots, " in all")});
   }
   if (study.attempts_lost() > 0) {
     table.add({"attempts lost", absl::StrCat(screen::whole(study.attempts_lost()), " (their runs wait again)")});

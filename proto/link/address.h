@@ -28,8 +28,8 @@ struct Address {
 // in /tmp/drover-<user id>.
 std::string default_address();
 
-// Makes the folder of a Unix socket with mode 0700, or checks that it is ours and closed to others: FAILED_PRECONDITION,
-// in words, when it is not (another owner, open to group or others, a symbolic link).
+// Makes the folder of a Unix socket with mode 0700, or checks that it is ours and closed to others:
+// FAILED_PRECONDITION, in words, when it is not (another owner, open to group or others, a symbolic link).
 absl::Status prepare_socket_folder(const Address& address);
 
 }  // namespace drover::link

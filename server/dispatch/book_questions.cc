@@ -84,7 +84,8 @@ std::vector<Key> Book::impatient(absl::Duration now) const {
       const Session* const holder = session_of_worker(worker);
       const bool silent = holder == nullptr || holder->lapsed;
       const bool parked = attempt.state == Attempt::State::kParked || attempt.state == Attempt::State::kStopping;
-      if (silent && parked && !attempt.released && now - attempt.since > patience(studies_.at(runs_.at(key.run).study))) keys.push_back(key);
+      if (silent && parked && !attempt.released && now - attempt.since > patience(studies_.at(runs_.at(key.run).study)))
+        keys.push_back(key);
     }
   }
   std::sort(keys.begin(), keys.end());
@@ -167,10 +168,9 @@ std::int32_t Book::slots_for(std::int64_t study) const {
   const Study& wanted = at->second.study;
   std::int32_t slots = 0;
   for (const auto& [id, session] : sessions_) {
-    const bool has_code = std::any_of(wanted.code_digests.begin(), wanted.code_digests.end(),
-                                      [&, &session = session](const std::string& digest) {
-                                        return session.code_digests.contains(digest);
-                                      });
+    const bool has_code = std::any_of(
+        wanted.code_digests.begin(), wanted.code_digests.end(),
+        [&, &session = session](const std::string& digest) { return session.code_digests.contains(digest); });
     if (has_code && !session.lapsed) slots += session.slots;
   }
   return slots;

@@ -1,8 +1,8 @@
 // The command loop: one thread that lets requests decide, writes what they decided in group commits, and answers.
 //
 // A request waits in a queue; the writer takes all that wait (at most kMostInCommit), gives each a savepoint, commits
-// once, and only then answers. So an answer is never given before its transaction is on disk (design.md, I1), and a request id
-// that was answered once is answered with the same bytes for ever (I4), from the store and not from memory.
+// once, and only then answers. So an answer is never given before its transaction is on disk (design.md, I1), and a
+// request id that was answered once is answered with the same bytes for ever (I4), from the store and not from memory.
 //
 // When the disk is full the requests concerned get RESOURCE_EXHAUSTED, the memory is loaded anew from the store, and
 // the loop goes on. When a sync or a read fails nothing in memory can be trusted: `die` is called (DATA_LOSS).
@@ -37,7 +37,7 @@ namespace drover::ledger {
 struct Call {
   std::string request_id;  // empty: changes nothing that may not be done twice
   std::string principal;
-  std::string digest;      // of the request's content; another one under the same id is refused
+  std::string digest;  // of the request's content; another one under the same id is refused
   // Decides; the bytes are the answer. Runs on the writer thread.
   std::function<absl::StatusOr<std::string>(Turn&)> decide;
   // Takes the answer after the commit, on the writer thread; must not block.
@@ -55,10 +55,10 @@ struct Options {
   std::map<std::string, std::int32_t> licences;
   std::string version;
   std::function<Now()> clock;
-  std::function<std::string()> fresh_token;     // unguessable
+  std::function<std::string()> fresh_token;  // unguessable
   std::function<std::uint64_t()> fresh_seed;
-  std::string fingerprint;                      // of the machine
-  std::function<void(const absl::Status&)> die; // must not return
+  std::string fingerprint;                       // of the machine
+  std::function<void(const absl::Status&)> die;  // must not return
   // After each commit, on the writer thread: studies that changed. Must not block.
   std::function<void(const std::set<std::int64_t>&)> committed = [](const std::set<std::int64_t>&) {};
   // About once a second: whether the disk takes writes.

@@ -24,14 +24,22 @@ absl::Status change(Turn& turn, std::int64_t study, v1::StudyState state, v1::St
 
 const char* state_word(v1::StudyState state) {
   switch (state) {
-    case v1::STUDY_STATE_ACTIVE: return "active";
-    case v1::STUDY_STATE_PAUSED: return "paused";
-    case v1::STUDY_STATE_FINISHING: return "finishing";
-    case v1::STUDY_STATE_FINISHED: return "finished";
-    case v1::STUDY_STATE_STOPPING: return "stopping";
-    case v1::STUDY_STATE_STOPPED: return "stopped";
-    case v1::STUDY_STATE_FAILED: return "failed";
-    default: return "in no known state";
+    case v1::STUDY_STATE_ACTIVE:
+      return "active";
+    case v1::STUDY_STATE_PAUSED:
+      return "paused";
+    case v1::STUDY_STATE_FINISHING:
+      return "finishing";
+    case v1::STUDY_STATE_FINISHED:
+      return "finished";
+    case v1::STUDY_STATE_STOPPING:
+      return "stopping";
+    case v1::STUDY_STATE_STOPPED:
+      return "stopped";
+    case v1::STUDY_STATE_FAILED:
+      return "failed";
+    default:
+      return "in no known state";
   }
 }
 
@@ -105,7 +113,8 @@ study::StudyStarted started(const v1::StartStudyRequest& request, const study::C
   started.set_owner(request.owner());
   *started.mutable_spec() = checked.effective;
   for (study::Cell& cell : study::pack_cells(checked.cells)) *started.add_cells() = std::move(cell);
-  if (checked.effective.search().order() == v1::ORDER_CANDIDATE) started.set_window(checked.effective.search().look_ahead());
+  if (checked.effective.search().order() == v1::ORDER_CANDIDATE)
+    started.set_window(checked.effective.search().look_ahead());
   started.set_fingerprint(settings.fingerprint);
   started.set_seed(checked.effective.search().seed());
   for (int i = 0; i < checked.effective.codes_size(); ++i) {
@@ -164,9 +173,9 @@ absl::Status stop_run(Turn& turn, std::int64_t study, std::int64_t run) {
 absl::StatusOr<v1::Study> start_study(Turn& turn, const v1::StartStudyRequest& request, const StartSettings& settings) {
   DROVER_ASSIGN(const bool taken, turn.store().has_study(request.spec().name()));
   if (taken) {
-    return refusal(absl::StatusCode::kAlreadyExists, "STUDY_EXISTS",
-                   absl::StrCat("there is a study named ", request.spec().name(),
-                                " already; give this one another name"));
+    return refusal(
+        absl::StatusCode::kAlreadyExists, "STUDY_EXISTS",
+        absl::StrCat("there is a study named ", request.spec().name(), " already; give this one another name"));
   }
   const std::vector<v1::CodeDefinition> codes = turn.state().live_codes();
   const study::CheckResult checked = check(turn, request.spec(), settings.fresh_seed, codes);
@@ -234,7 +243,8 @@ absl::Status issue_asks(Turn& turn, const Asked& asked) {
   // Twice, since what has just begun to finish may be over already.
   for (int step = 0; step < 2; ++step) {
     const study::Standing now = state.standing(*record, turn.now().wall);
-    const study::Turn next = study::next_turn(now, asked.progress.converged, asked.dry, asked.progress.sentence, record->reason);
+    const study::Turn next =
+        study::next_turn(now, asked.progress.converged, asked.dry, asked.progress.sentence, record->reason);
     if (next.state == v1::STUDY_STATE_UNSPECIFIED) break;
     // What made it finish stays its last word.
     const std::string sentence = next.state == v1::STUDY_STATE_FINISHED ? record->sentence : next.sentence;

@@ -12,7 +12,8 @@ namespace drover::service {
 absl::StatusOr<std::shared_ptr<const study::StudyPlan>> Plans::of(const store::StudyRow& row, store::Reader& reader) {
   {
     const std::lock_guard lock(mutex_);
-    const auto at = std::find_if(recent_.begin(), recent_.end(), [&](const auto& entry) { return entry.first == row.id; });
+    const auto at =
+        std::find_if(recent_.begin(), recent_.end(), [&](const auto& entry) { return entry.first == row.id; });
     if (at != recent_.end()) {
       recent_.splice(recent_.begin(), recent_, at);
       return at->second;
@@ -23,8 +24,8 @@ absl::StatusOr<std::shared_ptr<const study::StudyPlan>> Plans::of(const store::S
   DROVER_ASSIGN(const std::vector<study::CellValues> cells, study::unpack_cells(stored));
   absl::StatusOr<std::unique_ptr<study::StudyPlan>> made = study::StudyPlan::make(row.spec, codes, cells);
   if (!made.ok()) {
-    return absl::DataLossError(absl::StrCat("the stored spec of study ", row.name, " makes no plan: ",
-                                            made.status().message()));
+    return absl::DataLossError(
+        absl::StrCat("the stored spec of study ", row.name, " makes no plan: ", made.status().message()));
   }
   std::shared_ptr<const study::StudyPlan> plan = *std::move(made);
   const std::lock_guard lock(mutex_);

@@ -1,12 +1,11 @@
 #include "service/server.h"
 
+#include <grpcpp/health_check_service_interface.h>
 #include <sys/stat.h>
 #include <unistd.h>
 
 #include <chrono>
 #include <utility>
-
-#include <grpcpp/health_check_service_interface.h>
 
 #include "absl/strings/str_cat.h"
 #include "link/channel.h"
@@ -17,8 +16,8 @@
 namespace drover::service {
 namespace {
 
-// All that waits in the ledger has been answered by then; only reads may be under way. Idle clients do not hear that we go
-// before they look, and are not waited for.
+// All that waits in the ledger has been answered by then; only reads may be under way. Idle clients do not hear that we
+// go before they look, and are not waited for.
 constexpr std::chrono::seconds kLastCalls{1};
 
 }  // namespace
@@ -61,8 +60,8 @@ absl::Status Server::start_ledger(ServerOptions& options) {
   DROVER_ASSIGN(ledger_, ledger::Ledger::start(std::move(store), std::move(settings)));
   DROVER_ASSIGN(readers_, ledger::Readers::open(folder, options.reading_threads));
   work_ = std::make_unique<WorkService>(*ledger_, options.fresh_id);
-  studies_ = std::make_unique<StudiesService>(
-      *ledger_, *readers_, StudiesService::Fresh{options.fresh_seed, study::machine_fingerprint()});
+  studies_ = std::make_unique<StudiesService>(*ledger_, *readers_,
+                                              StudiesService::Fresh{options.fresh_seed, study::machine_fingerprint()});
   learners_ = std::make_unique<ledger::Learners>(folder, *ledger_);
   return absl::OkStatus();
 }

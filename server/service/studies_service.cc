@@ -45,8 +45,8 @@ grpc::ServerUnaryReactor* StudiesService::change(
     const Request& request, v1::Study* response,
     std::function<absl::StatusOr<v1::Study>(ledger::Turn&, const Request&)> handler) {
   if (request.request_id().size() < 8 || request.request_id().size() > 128) {
-    return at_once<v1::Study>(
-        response, absl::InvalidArgumentError("request_id: 8 to 128 characters are needed, unique for each new request"));
+    return at_once<v1::Study>(response, absl::InvalidArgumentError(
+                                            "request_id: 8 to 128 characters are needed, unique for each new request"));
   }
   auto* const reply = new Reply<v1::Study>(response);
   ledger_.submit(ledger::make_call<Request, v1::Study>(
@@ -62,8 +62,8 @@ grpc::ServerUnaryReactor* StudiesService::CheckStudy(Context*, const v1::CheckSt
     const std::vector<v1::CodeDefinition> codes = ledger_.codes();
     int slots = 0;
     for (const v1::Worker& worker : ledger_.workers()) slots += worker.silent() ? 0 : worker.slots();
-    const study::CheckResult checked =
-        study::check_spec(spec, {.codes = codes, .slots = slots, .fresh_seed = fresh_.seed(), .now = ledger_.wall_time()});
+    const study::CheckResult checked = study::check_spec(
+        spec, {.codes = codes, .slots = slots, .fresh_seed = fresh_.seed(), .now = ledger_.wall_time()});
     v1::CheckStudyResponse answer;
     *answer.mutable_problems() = {checked.problems.begin(), checked.problems.end()};
     absl::StatusOr<std::optional<store::StudyRow>> taken = reader.study(spec.name());
@@ -92,16 +92,14 @@ grpc::ServerUnaryReactor* StudiesService::StartStudy(Context*, const v1::StartSt
 
 grpc::ServerUnaryReactor* StudiesService::ListStudies(Context*, const v1::ListStudiesRequest* request,
                                                       v1::ListStudiesResponse* response) {
-  return read<v1::ListStudiesResponse>(response, [this, asked = *request](store::Reader& reader) {
-    return reads_.studies(reader, asked);
-  });
+  return read<v1::ListStudiesResponse>(
+      response, [this, asked = *request](store::Reader& reader) { return reads_.studies(reader, asked); });
 }
 
 grpc::ServerUnaryReactor* StudiesService::GetStudy(Context*, const v1::GetStudyRequest* request, v1::Study* response) {
   if (!request->has_wait() || request->seen_revision() == 0) {
-    return read<v1::Study>(response, [this, name = request->study()](store::Reader& reader) {
-      return reads_.study(reader, name);
-    });
+    return read<v1::Study>(
+        response, [this, name = request->study()](store::Reader& reader) { return reads_.study(reader, name); });
   }
   auto* const reply = new Reply<v1::Study>(response);
   wait_for_study(*request, reply);
@@ -129,23 +127,20 @@ void StudiesService::wait_for_study(const v1::GetStudyRequest& request, Reply<v1
 
 grpc::ServerUnaryReactor* StudiesService::GetCandidate(Context*, const v1::GetCandidateRequest* request,
                                                        v1::Candidate* response) {
-  return read<v1::Candidate>(response, [this, asked = *request](store::Reader& reader) {
-    return reads_.candidate(reader, asked);
-  });
+  return read<v1::Candidate>(
+      response, [this, asked = *request](store::Reader& reader) { return reads_.candidate(reader, asked); });
 }
 
 grpc::ServerUnaryReactor* StudiesService::ListCandidates(Context*, const v1::ListCandidatesRequest* request,
                                                          v1::ListCandidatesResponse* response) {
-  return read<v1::ListCandidatesResponse>(response, [this, asked = *request](store::Reader& reader) {
-    return reads_.candidates(reader, asked);
-  });
+  return read<v1::ListCandidatesResponse>(
+      response, [this, asked = *request](store::Reader& reader) { return reads_.candidates(reader, asked); });
 }
 
 grpc::ServerUnaryReactor* StudiesService::ListRuns(Context*, const v1::ListRunsRequest* request,
                                                    v1::ListRunsResponse* response) {
-  return read<v1::ListRunsResponse>(response, [this, asked = *request](store::Reader& reader) {
-    return reads_.runs(reader, asked);
-  });
+  return read<v1::ListRunsResponse>(
+      response, [this, asked = *request](store::Reader& reader) { return reads_.runs(reader, asked); });
 }
 
 grpc::ServerUnaryReactor* StudiesService::PauseStudy(Context*, const v1::PauseStudyRequest* request,
@@ -157,9 +152,10 @@ grpc::ServerUnaryReactor* StudiesService::PauseStudy(Context*, const v1::PauseSt
 
 grpc::ServerUnaryReactor* StudiesService::ResumeStudy(Context*, const v1::ResumeStudyRequest* request,
                                                       v1::Study* response) {
-  return change<v1::ResumeStudyRequest>(*request, response, [](ledger::Turn& turn, const v1::ResumeStudyRequest& asked) {
-    return ledger::resume_study(turn, asked.study());
-  });
+  return change<v1::ResumeStudyRequest>(*request, response,
+                                        [](ledger::Turn& turn, const v1::ResumeStudyRequest& asked) {
+                                          return ledger::resume_study(turn, asked.study());
+                                        });
 }
 
 grpc::ServerUnaryReactor* StudiesService::StopStudy(Context*, const v1::StopStudyRequest* request,

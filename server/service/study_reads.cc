@@ -80,7 +80,8 @@ absl::StatusOr<v1::ListStudiesResponse> StudyReads::studies(store::Reader& reade
   return response;
 }
 
-absl::StatusOr<v1::Candidate> StudyReads::candidate(store::Reader& reader, const v1::GetCandidateRequest& request) const {
+absl::StatusOr<v1::Candidate> StudyReads::candidate(store::Reader& reader,
+                                                    const v1::GetCandidateRequest& request) const {
   DROVER_ASSIGN(const store::StudyRow study, row(reader, request.study()));
   const std::int64_t number = request.number() == 0 ? study.best : request.number();
   if (number == 0) {
@@ -89,9 +90,9 @@ absl::StatusOr<v1::Candidate> StudyReads::candidate(store::Reader& reader, const
   }
   DROVER_ASSIGN(const std::optional<store::CandidateRow> found, reader.candidate(study.id, number));
   if (!found) {
-    return ledger::refusal(absl::StatusCode::kNotFound, "NO_SUCH_CANDIDATE",
-                           absl::StrCat("study ", study.name, " has no candidate ", number, "; there are ",
-                                        study.candidates));
+    return ledger::refusal(
+        absl::StatusCode::kNotFound, "NO_SUCH_CANDIDATE",
+        absl::StrCat("study ", study.name, " has no candidate ", number, "; there are ", study.candidates));
   }
   DROVER_ASSIGN(const auto plan, plans_.of(study, reader));
   DROVER_ASSIGN(v1::Candidate shown, candidate_view(*found, *plan));

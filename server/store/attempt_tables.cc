@@ -17,7 +17,8 @@ absl::Status grant(Prepared& sql, const study::Granted& granted) {
       INSERT INTO attempt(run, fence, session, worker, state)
       VALUES (?1, ?2, ?3, (SELECT worker FROM session WHERE id = ?3), 'granted'))sql"];
   DROVER_TRY(attempt.bind(1, granted.run()).bind(2, granted.fence()).bind(3, granted.session()).run());
-  for (const auto& [pool, n] : std::map<std::string, std::int32_t>(granted.licences().begin(), granted.licences().end())) {
+  for (const auto& [pool, n] :
+       std::map<std::string, std::int32_t>(granted.licences().begin(), granted.licences().end())) {
     Statement& hold = sql["INSERT INTO licence_hold(run, fence, pool, n) VALUES (?1, ?2, ?3, ?4)"];
     DROVER_TRY(hold.bind(1, granted.run()).bind(2, granted.fence()).bind(3, pool).bind(4, std::int64_t{n}).run());
   }
@@ -29,7 +30,8 @@ absl::Status set_state(Prepared& sql, std::int64_t run, std::int64_t fence, std:
   Statement& update = sql[R"sql(
       UPDATE attempt SET state = ?1
       WHERE run = ?2 AND fence = ?3 AND state IN ('granted', 'begun', 'parked', 'stopping'))sql"];
-  return update.bind(1, state).bind(2, run).bind(3, fence).run_on_one(absl::StrCat("an attempt that is ", std::string(state)));
+  return update.bind(1, state).bind(2, run).bind(3, fence).run_on_one(
+      absl::StrCat("an attempt that is ", std::string(state)));
 }
 
 absl::Status hear(Prepared& sql, const study::Heard& heard) {
@@ -48,7 +50,7 @@ absl::Status free_licences(Prepared& sql, std::int64_t run, std::int64_t fence) 
 
 // The attempt's end. A late report may end one that was booked as lost or handed back before.
 absl::Status end_attempt(Prepared& sql, std::int64_t run, std::int64_t fence, std::string_view state,
-                 const v1::AttemptReport& report, std::int64_t number) {
+                         const v1::AttemptReport& report, std::int64_t number) {
   Statement& update = sql[R"sql(
       UPDATE attempt SET state = ?1, reason = ?2, abnormal = ?3, report = ?4, end_event = ?5
       WHERE run = ?6 AND fence = ?7 AND state NOT IN ('settled', 'duplicate'))sql"];
@@ -152,7 +154,8 @@ absl::Status apply_to_attempts(Prepared& sql, const Event& event, std::int64_t n
     case Event::kSettled:
       return settle(sql, event, number);
     case Event::kDuplicate:
-      return end_attempt(sql, event.duplicate().run(), event.duplicate().fence(), "duplicate", event.duplicate().report(), number);
+      return end_attempt(sql, event.duplicate().run(), event.duplicate().fence(), "duplicate",
+                         event.duplicate().report(), number);
     case Event::kRefused:
       return absl::OkStatus();  // the event row itself is the record
     case Event::kWithdrawn:

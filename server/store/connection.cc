@@ -15,9 +15,9 @@ constexpr int kBusyMs = 5000;
 
 absl::Status to_status(sqlite3* database, int code, std::string_view what) {
   if (code == SQLITE_OK || code == SQLITE_DONE || code == SQLITE_ROW) return absl::OkStatus();
-  const std::string text = absl::StrCat(std::string(what), ": ",
-                                        database != nullptr ? sqlite3_errmsg(database) : sqlite3_errstr(code), " (",
-                                        sqlite3_errstr(code), ", SQLite code ", code, ")");
+  const std::string text =
+      absl::StrCat(std::string(what), ": ", database != nullptr ? sqlite3_errmsg(database) : sqlite3_errstr(code), " (",
+                   sqlite3_errstr(code), ", SQLite code ", code, ")");
   // The index of the log could not grow: nothing was written.
   if (code == SQLITE_IOERR_SHMSIZE) return absl::ResourceExhaustedError(absl::StrCat("the disk is full: ", text));
   switch (code & 0xff) {
@@ -61,7 +61,8 @@ absl::Status Connection::set_up(Kind kind) {
   sqlite3_db_config(database_, SQLITE_DBCONFIG_DQS_DML, 0, nullptr);
   sqlite3_db_config(database_, SQLITE_DBCONFIG_DQS_DDL, 0, nullptr);
   sqlite3_db_config(database_, SQLITE_DBCONFIG_DEFENSIVE, 1, nullptr);
-  DROVER_TRY(execute("PRAGMA trusted_schema = OFF; PRAGMA cell_size_check = ON; PRAGMA mmap_size = 0; PRAGMA temp_store = MEMORY"));
+  DROVER_TRY(execute(
+      "PRAGMA trusted_schema = OFF; PRAGMA cell_size_check = ON; PRAGMA mmap_size = 0; PRAGMA temp_store = MEMORY"));
   if (kind == Kind::kReader) {
     // Checkpoints by two connections at once can corrupt the file in 3.40 (the WAL-reset race).
     DROVER_TRY(execute("PRAGMA wal_autocheckpoint = 0"));

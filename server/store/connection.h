@@ -42,7 +42,8 @@ class Connection {
 };
 
 // A prepared statement for many uses. The connection must outlive it. Errors wait in status() until the end of a use:
-//   statement.bind(1, study).bind(2, name); while (statement.next()) use(statement.text(0)); DROVER_TRY(statement.end());
+//   statement.bind(1, study).bind(2, name); while (statement.next()) use(statement.text(0));
+//   DROVER_TRY(statement.end());
 class Statement {
  public:
   Statement() = default;
@@ -56,9 +57,9 @@ class Statement {
   Statement& bind_bytes(int index, std::string_view bytes);
   Statement& bind_null(int index);
 
-  bool next();               // one more row?
-  absl::Status end();        // resets for the next use; the first error of this one
-  absl::Status run();        // without rows
+  bool next();         // one more row?
+  absl::Status end();  // resets for the next use; the first error of this one
+  absl::Status run();  // without rows
   // As run, and exactly one row must have changed: INTERNAL with `what` otherwise.
   absl::Status run_on_one(std::string_view what);
 

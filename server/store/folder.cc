@@ -106,7 +106,8 @@ absl::Status Folder::lock() {
   if (lock_ < 0) return errno_status(name);
   if (flock(lock_, LOCK_EX | LOCK_NB) == 0) {
     const std::string pid = absl::StrCat(getpid(), "\n");
-    if (ftruncate(lock_, 0) != 0 || pwrite(lock_, pid.data(), pid.size(), 0) < 0) return absl::OkStatus();  // for people
+    if (ftruncate(lock_, 0) != 0 || pwrite(lock_, pid.data(), pid.size(), 0) < 0)
+      return absl::OkStatus();  // for people
     return absl::OkStatus();
   }
   if (errno != EWOULDBLOCK) return errno_status(name);
@@ -147,7 +148,8 @@ absl::Status Folder::set_high_water(const HighWater& mark) {
     if (mark_ < 0) return errno_status(name);
   }
   const std::string text = absl::StrCat(absl::Hex(mark.event, absl::kZeroPad16), " ", hex(mark.hash), "\n");
-  if (pwrite(mark_, text.data(), text.size(), 0) != static_cast<ssize_t>(text.size())) return errno_status(kHighWaterFile);
+  if (pwrite(mark_, text.data(), text.size(), 0) != static_cast<ssize_t>(text.size()))
+    return errno_status(kHighWaterFile);
   return absl::OkStatus();
 }
 

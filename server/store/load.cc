@@ -37,8 +37,8 @@ absl::StatusOr<std::optional<RunRecord>> Store::find_run(std::int64_t run) {
   std::optional<RunRecord> found;
   absl::Status bad;
   if (row.bind(1, run).next()) {
-    found = RunRecord{.study = row.integer(0), .input_digest = row.bytes(1), .closed = row.integer(2) != 0,
-                      .settling_report = {}};
+    found = RunRecord{
+        .study = row.integer(0), .input_digest = row.bytes(1), .closed = row.integer(2) != 0, .settling_report = {}};
     if (!row.null(3)) bad = parse(row, 3, found->settling_report);
   }
   DROVER_TRY(row.end());
@@ -53,8 +53,11 @@ absl::StatusOr<std::optional<AttemptRecord>> Store::find_attempt(std::int64_t ru
   std::optional<AttemptRecord> found;
   if (row.bind(1, run).bind(2, fence).next()) {
     const std::string state = row.text(3);
-    found = AttemptRecord{.worker = row.text(0), .end_event = row.integer(1), .end_hash = row.bytes(2),
-                          .has_result = state == "settled" || state == "duplicate", .settled = state == "settled"};
+    found = AttemptRecord{.worker = row.text(0),
+                          .end_event = row.integer(1),
+                          .end_hash = row.bytes(2),
+                          .has_result = state == "settled" || state == "duplicate",
+                          .settled = state == "settled"};
   }
   DROVER_TRY(row.end());
   return found;
@@ -128,8 +131,8 @@ absl::StatusOr<std::optional<study::CandidateScore>> Store::score(std::int64_t s
 }
 
 absl::StatusOr<std::vector<CandidateRow>> Store::open_candidates(std::int64_t study) {
-  Statement& rows = (*sql_)[absl::StrCat("SELECT ", candidate_columns(),
-                                         " FROM candidate AS c WHERE c.study = ?1 AND c.score IS NULL ORDER BY number")];
+  Statement& rows = (*sql_)[absl::StrCat(
+      "SELECT ", candidate_columns(), " FROM candidate AS c WHERE c.study = ?1 AND c.score IS NULL ORDER BY number")];
   std::vector<CandidateRow> candidates;
   rows.bind(1, study);
   absl::Status bad;
@@ -147,7 +150,8 @@ absl::StatusOr<std::vector<RunRow>> Store::live_runs() {
   std::map<std::int64_t, RunRow> runs;
   Statement& open = (*sql_)[absl::StrCat("SELECT ", run_columns(),
                                          " FROM run AS r WHERE r.life IN ('open', 'set_aside') "
-                                         "UNION SELECT ", run_columns(),
+                                         "UNION SELECT ",
+                                         run_columns(),
                                          " FROM attempt AS a JOIN run AS r ON r.id = a.run "
                                          "WHERE a.state IN ('granted', 'begun', 'parked', 'stopping')")];
   while (open.next()) {
@@ -155,10 +159,10 @@ absl::StatusOr<std::vector<RunRow>> Store::live_runs() {
     runs[run.id] = std::move(run);
   }
   DROVER_TRY(open.end());
-  Statement& rows = (*sql_)[absl::StrCat(
-      "SELECT ", attempt_columns(),
-      " FROM attempt AS a WHERE a.run = ?1 AND (a.abnormal = 1 OR a.state IN ('granted', 'begun', 'parked', 'stopping'))"
-      " ORDER BY a.fence")];
+  Statement& rows = (*sql_)[absl::StrCat("SELECT ", attempt_columns(),
+                                         " FROM attempt AS a WHERE a.run = ?1 AND (a.abnormal = 1 OR a.state IN "
+                                         "('granted', 'begun', 'parked', 'stopping'))"
+                                         " ORDER BY a.fence")];
   Statement& holds = (*sql_)["SELECT pool, n FROM licence_hold WHERE run = ?1 AND fence = ?2"];
   for (auto& [id, run] : runs) {
     rows.bind(1, id);
@@ -182,10 +186,10 @@ absl::StatusOr<std::vector<RunRow>> Store::live_runs() {
 }
 
 absl::StatusOr<std::vector<RunRow>> Store::partial_results(std::int64_t study) {
-  Statement& rows = (*sql_)[absl::StrCat(
-      "SELECT ", run_columns(),
-      " FROM candidate AS c JOIN run AS r ON r.study = c.study AND r.candidate = c.number "
-      "WHERE c.study = ?1 AND c.score IS NULL AND r.life = 'settled' ORDER BY r.id")];
+  Statement& rows =
+      (*sql_)[absl::StrCat("SELECT ", run_columns(),
+                           " FROM candidate AS c JOIN run AS r ON r.study = c.study AND r.candidate = c.number "
+                           "WHERE c.study = ?1 AND c.score IS NULL AND r.life = 'settled' ORDER BY r.id")];
   std::vector<RunRow> runs;
   rows.bind(1, study);
   while (rows.next()) runs.push_back(read_run(rows));

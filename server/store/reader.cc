@@ -60,8 +60,12 @@ void Reader::end_snapshot() {
 absl::StatusOr<SearchRow> Reader::search(std::int64_t study) {
   DROVER_ASSIGN(const std::optional<StudyRow> row, study_by_id(*sql_, study));
   if (!row) return absl::NotFoundError(absl::StrCat("no study ", study));
-  SearchRow search{.spec = row->spec, .codes = {}, .cells = row->cells, .absorbed_through = row->absorbed,
-                   .asked = row->asked, .state = {}};
+  SearchRow search{.spec = row->spec,
+                   .codes = {},
+                   .cells = row->cells,
+                   .absorbed_through = row->absorbed,
+                   .asked = row->asked,
+                   .state = {}};
   DROVER_ASSIGN(search.codes, codes_of(*sql_, study));
   Statement& state = (*sql_)["SELECT bytes FROM search_state WHERE study = ?1"];
   if (state.bind(1, study).next()) search.state = state.bytes(0);
@@ -156,8 +160,8 @@ absl::StatusOr<std::vector<RunRow>> Reader::read_runs(Statement& rows) {
 }
 
 absl::StatusOr<std::vector<RunRow>> Reader::runs(std::int64_t study, std::int64_t after, int limit) {
-  Statement& rows = (*sql_)[absl::StrCat("SELECT ", run_columns(),
-                                         " FROM run AS r WHERE r.study = ?1 AND r.number > ?2 ORDER BY r.number LIMIT ?3")];
+  Statement& rows = (*sql_)[absl::StrCat(
+      "SELECT ", run_columns(), " FROM run AS r WHERE r.study = ?1 AND r.number > ?2 ORDER BY r.number LIMIT ?3")];
   return read_runs(rows.bind(1, study).bind(2, after).bind(3, std::int64_t{limit}));
 }
 

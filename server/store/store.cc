@@ -14,9 +14,10 @@ namespace {
 constexpr std::int64_t kEventsChecked = 10'000;
 
 std::string lost_history(const std::string& path, const std::string& what) {
-  return absl::StrCat(path, ": ", what,
-                      ". The write-ahead log beside it may have been deleted or damaged, or an older copy was put back. "
-                      "Put the right files back; to go on without what is missing: --accept-lost-history");
+  return absl::StrCat(
+      path, ": ", what,
+      ". The write-ahead log beside it may have been deleted or damaged, or an older copy was put back. "
+      "Put the right files back; to go on without what is missing: --accept-lost-history");
 }
 
 }  // namespace
@@ -78,8 +79,8 @@ absl::Status Store::check_chain() {
   absl::Status broken;
   while (broken.ok() && rows.next()) {
     const std::string hash = rows.bytes(2);
-    const bool right = rows.integer(0) == (skip ? expected - 1 : expected) &&
-                       (skip || chain_next(before, rows.bytes(1)) == hash);
+    const bool right =
+        rows.integer(0) == (skip ? expected - 1 : expected) && (skip || chain_next(before, rows.bytes(1)) == hash);
     if (!right) {
       broken = absl::DataLossError(absl::StrCat(folder_->database(), ": the chain of events is broken at event ",
                                                 rows.integer(0), "; the file is damaged. Put a backup back"));

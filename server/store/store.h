@@ -23,11 +23,11 @@ namespace drover::store {
 
 struct StoreOptions {
   Folder::Checks checks;
-  std::string vfs;                    // SQLite VFS; empty: the default. For fault tests.
-  std::string fresh_id;               // the id of a store that is made now; unguessable
-  std::int64_t create_us = 0;         // wall time, for people
-  bool accept_lost_history = false;   // open a store that is behind its high-water mark
-  std::int64_t most_pages = 0;        // 0: no limit of our own
+  std::string vfs;                   // SQLite VFS; empty: the default. For fault tests.
+  std::string fresh_id;              // the id of a store that is made now; unguessable
+  std::int64_t create_us = 0;        // wall time, for people
+  bool accept_lost_history = false;  // open a store that is behind its high-water mark
+  std::int64_t most_pages = 0;       // 0: no limit of our own
 };
 
 // Not thread-safe: the writer's thread alone.
@@ -72,10 +72,11 @@ class Store {
     std::int64_t study = 0, run = 0, session = 0;  // the largest of each
   };
   absl::StatusOr<Numbers> numbers();
-  absl::StatusOr<std::vector<v1::CodeDefinition>> codes();  // in the order of their definition
+  absl::StatusOr<std::vector<v1::CodeDefinition>> codes();       // in the order of their definition
   absl::StatusOr<std::vector<study::SessionOpened>> sessions();  // the newest of each worker
   absl::StatusOr<std::map<std::string, std::int32_t>> licence_pools();
-  absl::StatusOr<std::vector<StudyRow>> open_studies();  // neither FINISHED nor STOPPED, with those that have open attempts
+  absl::StatusOr<std::vector<StudyRow>>
+  open_studies();  // neither FINISHED nor STOPPED, with those that have open attempts
   absl::StatusOr<std::optional<StudyRow>> study(std::int64_t id);
   absl::StatusOr<std::optional<study::CandidateScore>> score(std::int64_t study, std::int64_t candidate);
   absl::StatusOr<std::vector<CandidateRow>> open_candidates(std::int64_t study);
@@ -98,9 +99,9 @@ class Store {
   std::unique_ptr<Prepared> sql_;
   std::string id_;
   std::int64_t term_ = 0;
-  Appended head_;            // as of now
-  Appended committed_;       // as of the last commit
-  Appended saved_;           // as of the savepoint
+  Appended head_;       // as of now
+  Appended committed_;  // as of the last commit
+  Appended saved_;      // as of the savepoint
   std::int64_t saved_term_ = 0, committed_term_ = 0;
 };
 

@@ -28,7 +28,10 @@ absl::Status open_session(Prepared& sql, const study::SessionOpened& opened) {
       VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, 1))sql"];
   insert.bind(1, opened.session()).bind(2, opened.token()).bind(3, opened.worker()).bind(4, opened.host());
   insert.bind(5, opened.version()).bind(6, opened.boot_id()).bind(7, opened.incarnation());
-  return insert.bind(8, std::int64_t{opened.slots()}).bind(9, opened.fleet_job()).bind_bytes(10, canonical(opened)).run();
+  return insert.bind(8, std::int64_t{opened.slots()})
+      .bind(9, opened.fleet_job())
+      .bind_bytes(10, canonical(opened))
+      .run();
 }
 
 absl::Status store_request(Prepared& sql, const study::Answered& answered, std::int64_t number) {
@@ -67,7 +70,10 @@ absl::Status apply_to_tables(Prepared& sql, const study::Event& event, std::int6
       break;
   }
   if (event.study() == 0) return absl::OkStatus();  // refused: no run of ours
-  return sql["UPDATE study SET revision = ?1 WHERE id = ?2"].bind(1, number).bind(2, event.study()).run_on_one("a study");
+  return sql["UPDATE study SET revision = ?1 WHERE id = ?2"]
+      .bind(1, number)
+      .bind(2, event.study())
+      .run_on_one("a study");
 }
 
 }  // namespace drover::store

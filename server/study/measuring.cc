@@ -41,7 +41,8 @@ absl::StatusOr<Measuring> Measuring::make(const v1::StudySpec& spec, const v1::C
 
 absl::StatusOr<Measure> Measuring::measure(const std::string& name, const std::string& unit) const {
   const auto at = std::find(names_.begin(), names_.end(), name);
-  if (at == names_.end()) return absl::InvalidArgumentError(absl::StrCat(quoted(name), " is no output or derived number"));
+  if (at == names_.end())
+    return absl::InvalidArgumentError(absl::StrCat(quoted(name), " is no output or derived number"));
   const auto index = static_cast<std::size_t>(at - names_.begin());
   Measure made{.index = index, .unit = unit.empty() ? units_[index] : unit};
   if (unit.empty()) return made;

@@ -33,9 +33,12 @@ double seconds(const google::protobuf::Duration& span) {
 
 double across_cells(std::span<const double> values, std::span<const double> weights, const v1::Objective& objective) {
   switch (objective.across()) {
-    case v1::ACROSS_WORST: return worst(values, objective.sense());
-    case v1::ACROSS_QUANTILE: return weighted_quantile(values, weights, objective.quantile(), objective.sense());
-    default: return weighted_mean(values, weights);
+    case v1::ACROSS_WORST:
+      return worst(values, objective.sense());
+    case v1::ACROSS_QUANTILE:
+      return weighted_quantile(values, weights, objective.quantile(), objective.sense());
+    default:
+      return weighted_mean(values, weights);
   }
 }
 
@@ -59,7 +62,8 @@ struct Failure {
 
 // What one run gives to objectives and constraints, or why it gives nothing.
 std::variant<std::vector<double>, Failure> measure_run(const Measuring& measuring, std::span<const double> values,
-                                                       std::span<const double> conditions, const v1::AttemptReport& report) {
+                                                       std::span<const double> conditions,
+                                                       const v1::AttemptReport& report) {
   if (report.ending() == v1::ENDING_FAILED) return Failure{report.failure(), report.reason()};
   if (report.ending() == v1::ENDING_BOUNDED) {
     return Failure{v1::FAILURE_KIND_CHECK, absl::StrCat("stopped early: ", report.reason())};
@@ -76,7 +80,8 @@ std::variant<std::vector<double>, Failure> measure_run(const Measuring& measurin
 std::string condition_text(int cell, std::span<const v1::NamedValue> values) {
   std::vector<std::string> given;
   for (const v1::NamedValue& value : values) {
-    given.push_back(absl::StrCat(value.name(), " = ", number_text(value.number()), value.unit().empty() ? "" : " ", value.unit()));
+    given.push_back(
+        absl::StrCat(value.name(), " = ", number_text(value.number()), value.unit().empty() ? "" : " ", value.unit()));
   }
   return given.empty() ? "" : absl::StrCat("condition ", cell + 1, " (", absl::StrJoin(given, ", "), "): ");
 }
@@ -103,7 +108,8 @@ CandidateScore StudyPlan::score(std::span<const double> values, std::span<const 
         continue;
       }
       cost_s += seconds(report->usage().wall());
-      const auto seen = measure_run(parts_->measuring, values, parts_->cells[static_cast<std::size_t>(cell)].values, *report);
+      const auto seen =
+          measure_run(parts_->measuring, values, parts_->cells[static_cast<std::size_t>(cell)].values, *report);
       if (const auto* const numbers = std::get_if<std::vector<double>>(&seen)) {
         add_to(sum, *numbers);
       } else if (score.verdict() != v1::CANDIDATE_VERDICT_FAILED) {  // the first one is told

@@ -1,5 +1,5 @@
-// How many runs a second a ledger settles: 64 workers of one slot, each reporting a run and taking the next in one call, with the
-// study's thread asking ahead; real SQLite, real syncs, no RPC.
+// How many runs a second a ledger settles: 64 workers of one slot, each reporting a run and taking the next in one
+// call, with the study's thread asking ahead; real SQLite, real syncs, no RPC.
 //
 //   settle-benchmark [RUNS]
 #include <chrono>
@@ -58,8 +58,8 @@ void measure(std::int64_t runs) {
   threads.clear();
   const auto store = static_cast<double>(std::filesystem::file_size(bench.folder() + "/store.sqlite") +
                                          std::filesystem::file_size(bench.folder() + "/store.sqlite-wal"));
-  std::printf("%lld runs in %.2f s: %.0f runs/s, %.0f bytes of store a run\n", static_cast<long long>(runs), took.count(),
-              static_cast<double>(runs) / took.count(), store / static_cast<double>(runs));
+  std::printf("%lld runs in %.2f s: %.0f runs/s, %.0f bytes of store a run\n", static_cast<long long>(runs),
+              took.count(), static_cast<double>(runs) / took.count(), store / static_cast<double>(runs));
 }
 
 }  // namespace

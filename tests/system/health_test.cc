@@ -7,8 +7,8 @@
 namespace drover::system_test {
 namespace {
 
-// HealthCheckResponse.status of `service`, read off the wire: field 1, a varint (grpc/health/v1/health.proto: 1 SERVING, 2
-// NOT_SERVING). -1: the call failed.
+// HealthCheckResponse.status of `service`, read off the wire: field 1, a varint (grpc/health/v1/health.proto: 1
+// SERVING, 2 NOT_SERVING). -1: the call failed.
 int status_of(const std::shared_ptr<grpc::Channel>& channel, const std::string& service) {
   std::string request;
   if (!service.empty()) request = std::string("\x0a") + static_cast<char>(service.size()) + service;

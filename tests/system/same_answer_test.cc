@@ -47,8 +47,9 @@ v1::StartStudyRequest study() {
 
 // One call over a channel of its own.
 template <class Stub, class Request, class Response>
-grpc::Status call(const CoordinatorProcess& process, grpc::Status (Stub::*method)(grpc::ClientContext*, const Request&, Response*),
-                  Stub& stub, const Request& request, Response& response) {
+grpc::Status call(const CoordinatorProcess& process,
+                  grpc::Status (Stub::*method)(grpc::ClientContext*, const Request&, Response*), Stub& stub,
+                  const Request& request, Response& response) {
   static_cast<void>(process);
   grpc::ClientContext context;
   context.set_deadline(std::chrono::system_clock::now() + std::chrono::seconds(30));
@@ -73,7 +74,8 @@ class SameAnswer : public testing::Test {
     connect();
   }
   template <class Request, class Response>
-  Response work(grpc::Status (v1::Work::Stub::*method)(grpc::ClientContext*, const Request&, Response*), const Request& request) {
+  Response work(grpc::Status (v1::Work::Stub::*method)(grpc::ClientContext*, const Request&, Response*),
+                const Request& request) {
     Response response;
     const grpc::Status status = call(process_, method, *work_, request, response);
     EXPECT_TRUE(status.ok()) << status.error_message();

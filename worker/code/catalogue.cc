@@ -22,7 +22,8 @@ absl::StatusOr<Catalogue> read_catalogue(const std::string& folder) {
     std::error_code ignored;
     if (fs::exists(entry.path() / "code.toml", ignored)) folders.push_back(entry.path().string());
   }
-  if (error) return absl::NotFoundError(absl::StrCat("the folder of codes ", folder, " cannot be read: ", error.message()));
+  if (error)
+    return absl::NotFoundError(absl::StrCat("the folder of codes ", folder, " cannot be read: ", error.message()));
   std::sort(folders.begin(), folders.end());
   Catalogue catalogue;
   for (const std::string& one : folders) {
@@ -30,8 +31,8 @@ absl::StatusOr<Catalogue> read_catalogue(const std::string& folder) {
     if (!definition.ok()) {
       catalogue.problems.emplace_back(definition.status().message());
     } else if (const Definition* const other = catalogue.find(definition->name)) {
-      catalogue.problems.push_back(absl::StrCat(definition->folder, "/code.toml: there is a code ", definition->name, " in ",
-                                                other->folder, " already; give this one another name"));
+      catalogue.problems.push_back(absl::StrCat(definition->folder, "/code.toml: there is a code ", definition->name,
+                                                " in ", other->folder, " already; give this one another name"));
     } else {
       catalogue.codes.push_back(*std::move(definition));
     }

@@ -54,10 +54,12 @@ void Complaints::add_in(const std::string& file, int line, int column, const std
 std::string Complaints::text() const {
   auto sorted = lines_;
   std::stable_sort(sorted.begin(), sorted.end(), [](const auto& a, const auto& b) {
-    return std::tie(std::get<0>(a), std::get<1>(a), std::get<2>(a)) < std::tie(std::get<0>(b), std::get<1>(b), std::get<2>(b));
+    return std::tie(std::get<0>(a), std::get<1>(a), std::get<2>(a)) <
+           std::tie(std::get<0>(b), std::get<1>(b), std::get<2>(b));
   });
   std::vector<std::string> shown;
-  for (const auto& [file, line, column, what] : sorted) shown.push_back(absl::StrCat(file, ":", line, ":", column, ": ", what));
+  for (const auto& [file, line, column, what] : sorted)
+    shown.push_back(absl::StrCat(file, ":", line, ":", column, ": ", what));
   return absl::StrJoin(shown, "\n");
 }
 
@@ -148,7 +150,8 @@ std::string CheckedTable::needed(std::string_view key) {
   const bool there = table_.contains(key);
   const std::optional<std::string> value = text(key);
   if (!there) {
-    complaints_.add(table_.source(), absl::StrCat(name_, " has no ", std::string(key), "; add ", std::string(key), " = \"...\""));
+    complaints_.add(table_.source(),
+                    absl::StrCat(name_, " has no ", std::string(key), "; add ", std::string(key), " = \"...\""));
   } else if (value && value->empty()) {
     complaints_.add(place(key), absl::StrCat(std::string(key), " is empty"));
   }
@@ -160,8 +163,10 @@ void CheckedTable::end() {
     const std::string name(key.str());
     if (std::find(known_.begin(), known_.end(), name) != known_.end()) continue;
     const std::string near = nearest(name, known_);
-    complaints_.add(key.source(), near.empty() ? absl::StrCat("unknown key ", name, " in ", name_, "; known are ", absl::StrJoin(known_, ", "))
-                                               : absl::StrCat("unknown key ", name, " in ", name_, "; did you mean ", near, "?"));
+    complaints_.add(key.source(),
+                    near.empty()
+                        ? absl::StrCat("unknown key ", name, " in ", name_, "; known are ", absl::StrJoin(known_, ", "))
+                        : absl::StrCat("unknown key ", name, " in ", name_, "; did you mean ", near, "?"));
   }
 }
 

@@ -95,14 +95,16 @@ bool is_blank(char c) { return c == ' ' || c == '\t' || c == ',' || c == ';'; }
 absl::StatusOr<double> first_number(std::string_view text) {
   absl::Status asterisks;
   for (std::size_t at = 0; at < text.size(); ++at) {
-    const bool begins = at == 0 || is_blank(text[at - 1]) || std::string_view("=:(<>[").find(text[at - 1]) != std::string_view::npos;
+    const bool begins =
+        at == 0 || is_blank(text[at - 1]) || std::string_view("=:(<>[").find(text[at - 1]) != std::string_view::npos;
     if (!begins) continue;
     const absl::StatusOr<ReadNumber> read = read_number(text.substr(at));
     if (absl::IsOutOfRange(read.status()) && text.substr(at, 2) == "**") return read.status();
     if (!read.ok()) continue;
     const std::size_t after = at + read->length;
     // "nano" and "info" are words and no numbers.
-    const bool word = !std::isfinite(read->value) && after < text.size() && std::isalpha(static_cast<unsigned char>(text[after]));
+    const bool word =
+        !std::isfinite(read->value) && after < text.size() && std::isalpha(static_cast<unsigned char>(text[after]));
     if (!word) return read->value;
   }
   return absl::InvalidArgumentError("no number stands there");
@@ -123,8 +125,9 @@ absl::StatusOr<double> after_text(const OutputReader& output, Lines& lines) {
         number = first_number(following);
       }
       if (number.ok()) return number;
-      return absl::Status(number.status().code(), absl::StrCat("after \"", shown(output.after), "\" in ", output.file,
-                                                               " stands \"", shown(rest), "\": ", number.status().message()));
+      return absl::Status(number.status().code(),
+                          absl::StrCat("after \"", shown(output.after), "\" in ", output.file, " stands \"",
+                                       shown(rest), "\": ", number.status().message()));
     }
   }
   if (matches == 0) return absl::NotFoundError(absl::StrCat("\"", shown(output.after), "\" is not in ", output.file));
@@ -135,7 +138,8 @@ absl::StatusOr<double> after_text(const OutputReader& output, Lines& lines) {
 absl::StatusOr<double> at_place(const OutputReader& output, Lines& lines) {
   std::string line;
   for (std::int64_t n = 0; n < output.line; ++n) {
-    if (!lines.next(line)) return absl::NotFoundError(absl::StrCat(output.file, " has ", n, " lines, line ", output.line, " is wanted"));
+    if (!lines.next(line))
+      return absl::NotFoundError(absl::StrCat(output.file, " has ", n, " lines, line ", output.line, " is wanted"));
   }
   std::size_t at = 0;
   for (int column = 1;; ++column) {
@@ -153,8 +157,8 @@ absl::StatusOr<double> at_place(const OutputReader& output, Lines& lines) {
     const absl::StatusOr<ReadNumber> read = read_number(std::string_view(line).substr(at, end - at));
     if (read.ok() && read->length == end - at) return read->value;
     const std::string field = shown(std::string_view(line).substr(at, end - at));
-    return absl::InvalidArgumentError(absl::StrCat("field ", output.column, " in line ", output.line, " of ", output.file,
-                                                   " is \"", field, "\" and no number"));
+    return absl::InvalidArgumentError(absl::StrCat("field ", output.column, " in line ", output.line, " of ",
+                                                   output.file, " is \"", field, "\" and no number"));
   }
 }
 
@@ -163,7 +167,8 @@ absl::StatusOr<double> at_place(const OutputReader& output, Lines& lines) {
 absl::StatusOr<double> read_output(const OutputReader& output, const std::string& folder, absl::Time begun) {
   DROVER_ASSIGN(Lines lines, Lines::open(absl::StrCat(folder, "/", output.file), output.file));
   if (lines.written() + kClockStep < begun) {
-    return absl::FailedPreconditionError(absl::StrCat("file ", output.file, " is older than the run: the code did not write it"));
+    return absl::FailedPreconditionError(
+        absl::StrCat("file ", output.file, " is older than the run: the code did not write it"));
   }
   DROVER_ASSIGN(const double value, output.after.empty() ? at_place(output, lines) : after_text(output, lines));
   if (std::isfinite(value)) return value;

@@ -32,7 +32,8 @@ std::optional<double> take(std::string_view& rest, const std::array<Unit, kCount
 }  // namespace
 
 absl::StatusOr<absl::Duration> parse_span(std::string_view text) {
-  static constexpr std::array<Unit, 5> kUnits = {{{"ms", 1e-3}, {"s", 1.0}, {"m", 60.0}, {"h", 3600.0}, {"d", 86'400.0}}};
+  static constexpr std::array<Unit, 5> kUnits = {
+      {{"ms", 1e-3}, {"s", 1.0}, {"m", 60.0}, {"h", 3600.0}, {"d", 86'400.0}}};
   double seconds = 0.0;
   bool any = false;
   for (std::string_view rest = text; !rest.empty(); any = true) {
@@ -45,8 +46,15 @@ absl::StatusOr<absl::Duration> parse_span(std::string_view text) {
 }
 
 absl::StatusOr<std::int64_t> parse_size(std::string_view text) {
-  static constexpr std::array<Unit, 9> kUnits = {{{"KiB", 0x1p10}, {"MiB", 0x1p20}, {"GiB", 0x1p30}, {"TiB", 0x1p40},
-                                                  {"kB", 1e3}, {"MB", 1e6}, {"GB", 1e9}, {"TB", 1e12}, {"", 1.0}}};
+  static constexpr std::array<Unit, 9> kUnits = {{{"KiB", 0x1p10},
+                                                  {"MiB", 0x1p20},
+                                                  {"GiB", 0x1p30},
+                                                  {"TiB", 0x1p40},
+                                                  {"kB", 1e3},
+                                                  {"MB", 1e6},
+                                                  {"GB", 1e9},
+                                                  {"TB", 1e12},
+                                                  {"", 1.0}}};
   std::string_view rest = text;
   const std::optional<double> bytes = take(rest, kUnits);
   if (!bytes || !rest.empty() || *bytes < 1.0 || *bytes > kLargest) return absl::InvalidArgumentError("no size");

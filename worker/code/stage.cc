@@ -55,7 +55,8 @@ absl::StatusOr<std::map<std::string, v1::NamedValue>> check_inputs(const Definit
     }
     const bool choice = at->choices_size() > 0;
     if (choice != input.has_text()) {
-      return absl::InvalidArgumentError(absl::StrCat(input.name(), " must be ", choice ? "one of its choices" : "a number"));
+      return absl::InvalidArgumentError(
+          absl::StrCat(input.name(), " must be ", choice ? "one of its choices" : "a number"));
     }
     if (choice && std::find(at->choices().begin(), at->choices().end(), input.text()) == at->choices().end()) {
       return absl::InvalidArgumentError(absl::StrCat(input.name(), " cannot be \"", input.text(), "\"; choices are ",
@@ -64,7 +65,8 @@ absl::StatusOr<std::map<std::string, v1::NamedValue>> check_inputs(const Definit
     values[input.name()] = input;
   }
   for (const v1::Accepted& accepted : definition.accepts) {
-    if (!values.contains(accepted.name())) return absl::InvalidArgumentError(absl::StrCat(accepted.name(), " was not given"));
+    if (!values.contains(accepted.name()))
+      return absl::InvalidArgumentError(absl::StrCat(accepted.name(), " was not given"));
   }
   return values;
 }
@@ -88,8 +90,9 @@ std::vector<std::string> environment_of(const Definition& definition, const std:
       {"HOME", work},
       {"LC_ALL", "C"},
       {"OMP_NUM_THREADS", absl::StrCat(definition.cores)},
-      {"PATH", definition.path.empty() ? "/usr/local/bin:/usr/bin:/bin"
-                                       : absl::StrCat(absl::StrJoin(definition.path, ":"), ":/usr/local/bin:/usr/bin:/bin")},
+      {"PATH", definition.path.empty()
+                   ? "/usr/local/bin:/usr/bin:/bin"
+                   : absl::StrCat(absl::StrJoin(definition.path, ":"), ":/usr/local/bin:/usr/bin:/bin")},
       {"TMPDIR", work}};
   for (const std::string& name : definition.inherit) {
     if (const char* const value = std::getenv(name.c_str())) variables[name] = value;

@@ -16,8 +16,8 @@ struct Staged {
   std::vector<std::string> environment;  // "NAME=value", all of it, by name
 };
 
-// Writes into `work`, which must be there and empty. INVALID_ARGUMENT: an input is missing, unknown, of the wrong kind or
-// does not fit its field; RESOURCE_EXHAUSTED: the disk is full.
+// Writes into `work`, which must be there and empty. INVALID_ARGUMENT: an input is missing, unknown, of the wrong kind
+// or does not fit its field; RESOURCE_EXHAUSTED: the disk is full.
 absl::StatusOr<Staged> stage(const Definition& definition, std::span<const v1::NamedValue> inputs,
                              const std::string& work);
 

@@ -1,5 +1,7 @@
 #include "code/template.h"
 
+#include <locale.h>
+
 #include <algorithm>
 #include <array>
 #include <charconv>
@@ -7,8 +9,6 @@
 #include <cstdio>
 #include <cstdlib>
 #include <utility>
-
-#include <locale.h>
 
 #include "absl/strings/str_cat.h"
 #include "status/try.h"
@@ -28,15 +28,16 @@ struct Conversion {
 };
 
 absl::Status malformed(const std::string& text) {
-  return absl::InvalidArgumentError(absl::StrCat(
-      "format \"", text, "\" is not one conversion of d, i, e, E, f, F, g or G, as \"%12.5e\""));
+  return absl::InvalidArgumentError(
+      absl::StrCat("format \"", text, "\" is not one conversion of d, i, e, E, f, F, g or G, as \"%12.5e\""));
 }
 
 absl::StatusOr<Conversion> parse_conversion(const std::string& text) {
   Conversion made;
   std::size_t at = 0;
   if (text.empty() || text[at++] != '%') return malformed(text);
-  while (at < text.size() && std::string_view("-+ 0#").find(text[at]) != std::string_view::npos) made.flags += text[at++];
+  while (at < text.size() && std::string_view("-+ 0#").find(text[at]) != std::string_view::npos)
+    made.flags += text[at++];
   const auto number = [&](int& value, int most) {
     const char* const first = text.data() + at;
     const auto [end, error] = std::from_chars(first, text.data() + text.size(), value);
@@ -129,12 +130,14 @@ absl::StatusOr<std::string> format_number(double value, const Format& format) {
     DROVER_ASSIGN(text, print(value, conversion));
   }
   if (format.width > 0 && text.size() > static_cast<std::size_t>(format.width)) {
-    return absl::OutOfRangeError(absl::StrCat("\"", text, "\" has ", text.size(), " characters, its field has ", format.width));
+    return absl::OutOfRangeError(
+        absl::StrCat("\"", text, "\" has ", text.size(), " characters, its field has ", format.width));
   }
   return text;
 }
 
-absl::StatusOr<Template> Template::parse(std::string_view text, const Marks& marks, std::map<std::string, Format> formats) {
+absl::StatusOr<Template> Template::parse(std::string_view text, const Marks& marks,
+                                         std::map<std::string, Format> formats) {
   Template made;
   made.formats_ = std::move(formats);
   std::size_t at = 0;
@@ -163,8 +166,9 @@ std::pair<int, int> Template::place_of(const std::string& name) const {
   return at == pieces_.end() ? std::pair(0, 0) : std::pair(at->line, at->column);
 }
 
-absl::StatusOr<std::string> Template::render(const std::map<std::string, v1::NamedValue>& values,
-                                             const std::map<std::string, std::map<std::string, std::string>>& texts) const {
+absl::StatusOr<std::string> Template::render(
+    const std::map<std::string, v1::NamedValue>& values,
+    const std::map<std::string, std::map<std::string, std::string>>& texts) const {
   std::string made;
   for (const Piece& piece : pieces_) {
     if (piece.name.empty()) {
@@ -186,7 +190,8 @@ absl::StatusOr<std::string> Template::render(const std::map<std::string, v1::Nam
       if (const auto choice = named->second.find(text); choice != named->second.end()) text = choice->second;
     }
     if (format.width > 0 && text.size() > static_cast<std::size_t>(format.width)) {
-      return absl::OutOfRangeError(absl::StrCat(piece.name, ": \"", text, "\" is longer than its field of ", format.width));
+      return absl::OutOfRangeError(
+          absl::StrCat(piece.name, ": \"", text, "\" is longer than its field of ", format.width));
     }
     made += text;
   }

@@ -32,7 +32,8 @@ class Template {
     std::string open = "[=", close = "=]";
   };
   // INVALID_ARGUMENT with 'line N, column M: ...': a mark without its end, or an empty name.
-  static absl::StatusOr<Template> parse(std::string_view text, const Marks& marks, std::map<std::string, Format> formats);
+  static absl::StatusOr<Template> parse(std::string_view text, const Marks& marks,
+                                        std::map<std::string, Format> formats);
 
   // Names in the order of their first use.
   const std::vector<std::string>& names() const { return names_; }

@@ -61,7 +61,8 @@ bool near_memory_limit(const Definition& definition, const HowItEnded& how) {
 void judge_signal(v1::AttemptReport& report, const Definition& definition, const HowItEnded& how) {
   report.set_abnormal(true);
   if (*how.signal != SIGKILL) {
-    return fail(report, v1::FAILURE_KIND_SIGNAL, absl::StrCat("the code crashed: signal ", *how.signal, " (", strsignal(*how.signal), ")"));
+    return fail(report, v1::FAILURE_KIND_SIGNAL,
+                absl::StrCat("the code crashed: signal ", *how.signal, " (", strsignal(*how.signal), ")"));
   }
   if (near_memory_limit(definition, how)) {
     return fail(report, v1::FAILURE_KIND_MEMORY,
@@ -89,7 +90,8 @@ FoundText forbidden_text(const Definition& definition, const std::string& work, 
   return {};
 }
 
-void read_outputs(v1::AttemptReport& report, const Definition& definition, const HowItEnded& how, const std::string& work) {
+void read_outputs(v1::AttemptReport& report, const Definition& definition, const HowItEnded& how,
+                  const std::string& work) {
   for (const OutputReader& output : definition.outputs) {
     const absl::StatusOr<double> value = read_output(output, work, how.begun);
     if (!value.ok()) {
@@ -108,7 +110,8 @@ void judge_exit(v1::AttemptReport& report, const Definition& definition, const H
   const int code = how.exit_code.value_or(-1);
   std::string where;
   const FoundText found = forbidden_text(definition, work, stdout_path, stderr_path, where);
-  const std::string said = found.found ? absl::StrCat("\"", found.line_text, "\" (line ", found.line, " of ", where, ")") : "";
+  const std::string said =
+      found.found ? absl::StrCat("\"", found.line_text, "\" (line ", found.line, " of ", where, ")") : "";
   const auto& healthy = definition.healthy_exit_codes;
   if (std::find(healthy.begin(), healthy.end(), code) == healthy.end()) {
     return fail(report, v1::FAILURE_KIND_CODE,

@@ -62,7 +62,8 @@ absl::StatusOr<Ended::Cause> cause_of(const std::string& word) {
                                                              {"stopped", Ended::Cause::kStopped},
                                                              {"launch-failed", Ended::Cause::kLaunchFailed}};
   const auto at = kWords.find(word);
-  if (at == kWords.end()) return absl::InvalidArgumentError(absl::StrCat("the record has an unknown cause \"", word, "\""));
+  if (at == kWords.end())
+    return absl::InvalidArgumentError(absl::StrCat("the record has an unknown cause \"", word, "\""));
   return at->second;
 }
 

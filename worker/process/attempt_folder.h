@@ -13,9 +13,10 @@
 namespace drover::process {
 
 // Names of the files. order, report and receipt are the session's; the others the runner's.
-inline constexpr char kOrderFile[] = "order", kReportFile[] = "report", kReceiptFile[] = "receipt", kBegunFile[] = "begun",
-                      kEndedFile[] = "ended", kStopFile[] = "stop", kWatchFile[] = "watch", kAliveFile[] = "alive",
-                      kStdoutFile[] = "stdout", kStderrFile[] = "stderr", kRunnerLogFile[] = "runner.log";
+inline constexpr char kOrderFile[] = "order", kReportFile[] = "report", kReceiptFile[] = "receipt",
+                      kBegunFile[] = "begun", kEndedFile[] = "ended", kStopFile[] = "stop", kWatchFile[] = "watch",
+                      kAliveFile[] = "alive", kStdoutFile[] = "stdout", kStderrFile[] = "stderr",
+                      kRunnerLogFile[] = "runner.log";
 
 // Written before the simulation's first instruction.
 struct Begun {

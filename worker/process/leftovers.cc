@@ -25,14 +25,15 @@ using Moment = std::chrono::steady_clock::time_point;
 
 Moment after(absl::Duration span) { return std::chrono::steady_clock::now() + absl::ToChronoMilliseconds(span); }
 
-// Whether the process carries the attempt's mark: a file of its folder stands open in it (stdout, stderr, `alive`). That
-// finds what has left its session and lost its parents, too.
+// Whether the process carries the attempt's mark: a file of its folder stands open in it (stdout, stderr, `alive`).
+// That finds what has left its session and lost its parents, too.
 bool carries(pid_t pid, const std::string& folder) {
   for (const char* const name : {"1", "2"}) {
     char target[4096];
     const std::string link = absl::StrCat("/proc/", pid, "/fd/", name);
     const ssize_t size = readlink(link.c_str(), target, sizeof(target));
-    if (size > 0 && std::string_view(target, static_cast<std::size_t>(size)).substr(0, folder.size() + 1) == folder + "/") {
+    if (size > 0 &&
+        std::string_view(target, static_cast<std::size_t>(size)).substr(0, folder.size() + 1) == folder + "/") {
       return true;
     }
   }
@@ -92,10 +93,12 @@ absl::Status end_leftovers(Files& files, const std::string& folder, const std::s
   if (seen.found == Found::kRunning) {
     // Its runner does this best, and then says how it ended. Without a `stop` on disk it could not know.
     DROVER_TRY(files.write_durably(absl::StrCat(folder, "/", kStopFile), ""));
-    wait_until([&] {
-      const absl::StatusOr<Survey> now = survey(files, folder, boot_id);
-      return now.ok() && now->found != Found::kRunning;
-    }, grace + kMargin);
+    wait_until(
+        [&] {
+          const absl::StatusOr<Survey> now = survey(files, folder, boot_id);
+          return now.ok() && now->found != Found::kRunning;
+        },
+        grace + kMargin);
     DROVER_ASSIGN(seen, survey(files, folder, boot_id));
   }
   if (!seen.begun || seen.begun->boot_id != boot_id) return absl::OkStatus();
@@ -103,10 +106,12 @@ absl::Status end_leftovers(Files& files, const std::string& folder, const std::s
   if (none_left()) return absl::OkStatus();
   for (const ProcessIdentity& process : left(*seen.begun, folder)) send(process, SIGTERM);
   if (wait_until(none_left, grace)) return absl::OkStatus();
-  const bool ended = wait_until([&] {
-    for (const ProcessIdentity& process : left(*seen.begun, folder)) send(process, SIGKILL);
-    return none_left();
-  }, kMargin);
+  const bool ended = wait_until(
+      [&] {
+        for (const ProcessIdentity& process : left(*seen.begun, folder)) send(process, SIGKILL);
+        return none_left();
+      },
+      kMargin);
   if (ended) return absl::OkStatus();
   return absl::UnavailableError(absl::StrCat("processes of ", folder, " cannot be ended, not even by SIGKILL"));
 }

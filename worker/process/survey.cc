@@ -9,8 +9,8 @@
 namespace drover::process {
 namespace {
 
-// Whether somebody holds the lock, without taking it: a runner that starts at this moment must not find it taken. A file
-// that is not there is held by nobody.
+// Whether somebody holds the lock, without taking it: a runner that starts at this moment must not find it taken. A
+// file that is not there is held by nobody.
 bool is_locked(const std::string& path) {
   const int file = open(path.c_str(), O_RDWR | O_CLOEXEC | O_NOFOLLOW);
   if (file < 0) return false;

@@ -36,9 +36,9 @@ bool stat_fields(pid_t pid, char& state, pid_t& parent, unsigned long long& star
   const char* const after = std::strrchr(text, ')');
   int parent_number = 0;
   if (after == nullptr) return false;
-  const int read = std::sscanf(after + 1,
-                               " %c %d %*d %*d %*d %*d %*u %*u %*u %*u %*u %*u %*u %*d %*d %*d %*d %*d %*d %llu",
-                               &state, &parent_number, &start);
+  const int read =
+      std::sscanf(after + 1, " %c %d %*d %*d %*d %*d %*u %*u %*u %*u %*u %*u %*u %*d %*d %*d %*d %*d %*d %llu", &state,
+                  &parent_number, &start);
   parent = parent_number;
   return read == 3;
 }
@@ -61,7 +61,8 @@ int read_table() {
     if (pid <= 0 || !stat_fields(pid, state, parent, start) || state == 'Z' || state == 'X') continue;
     if (count == room && room < kMostProcesses) {
       const int larger = room == 0 ? 256 : room * 2;
-      auto* const grown = static_cast<Process*>(std::realloc(table, sizeof(Process) * static_cast<unsigned long>(larger)));
+      auto* const grown =
+          static_cast<Process*>(std::realloc(table, sizeof(Process) * static_cast<unsigned long>(larger)));
       if (grown == nullptr) break;
       table = grown;
       room = larger;
@@ -98,7 +99,8 @@ void boot_id(char* text, unsigned long size) {
 
 int signal_descendants(int signal) {
   const int count = read_table();
-  // Marks spread from parents to children until none is new; pids wrap around, so one pass in their order is not enough.
+  // Marks spread from parents to children until none is new; pids wrap around, so one pass in their order is not
+  // enough.
   for (bool changed = true; changed;) {
     changed = false;
     for (int i = 0; i < count; ++i) {

@@ -10,7 +10,8 @@ class Record {
   Record();  // with its format line
   void add(const char* key, long long value);
   void add(const char* key, const char* value);
-  // Temporary name, sync, rename, sync of the folder. 0, or the errno of what failed; nothing is there under `name` then.
+  // Temporary name, sync, rename, sync of the folder. 0, or the errno of what failed; nothing is there under `name`
+  // then.
   int write(int folder, const char* name);
 
  private:

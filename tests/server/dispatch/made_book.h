@@ -15,11 +15,17 @@ inline Session worker(std::int64_t id, const std::string& name, int slots = 2) {
 }
 
 inline Study study_of(std::int64_t id, std::int32_t priority = 0, std::map<std::string, std::int32_t> licences = {}) {
-  return {.id = id, .priority = priority, .granting = true, .code_digests = {"c0de"}, .licences = {std::move(licences)},
+  return {.id = id,
+          .priority = priority,
+          .granting = true,
+          .code_digests = {"c0de"},
+          .licences = {std::move(licences)},
           .time_limits = {absl::Minutes(10)}};
 }
 
-inline Run run_of(std::int64_t id, std::int64_t study = 1) { return {.id = id, .study = study, .number = id, .candidate = id}; }
+inline Run run_of(std::int64_t id, std::int64_t study = 1) {
+  return {.id = id, .study = study, .number = id, .candidate = id};
+}
 
 inline study::Event granted(std::int64_t run, std::int64_t fence, std::int64_t session,
                             const std::map<std::string, std::int32_t>& licences = {}) {

@@ -8,8 +8,9 @@ namespace {
 TEST(Times, AreSoundByDefault) { EXPECT_TRUE(Times{}.validate().ok()); }
 
 TEST(Times, MustBeAboveZero) {
-  for (absl::Duration Times::*const field : {&Times::renew_every, &Times::lease, &Times::grace, &Times::patience,
-                                             &Times::retry_first, &Times::retry_most, &Times::longest_poll, &Times::late}) {
+  for (absl::Duration Times::*const field :
+       {&Times::renew_every, &Times::lease, &Times::grace, &Times::patience, &Times::retry_first, &Times::retry_most,
+        &Times::longest_poll, &Times::late}) {
     Times times;
     times.*field = absl::ZeroDuration();
     EXPECT_TRUE(absl::IsInvalidArgument(times.validate()));

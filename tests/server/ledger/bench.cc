@@ -126,9 +126,9 @@ absl::StatusOr<v1::EnrolResponse> Bench::enrol(const std::string& worker, int sl
   *request.add_codes() = test_code();
   for (v1::RollEntry& entry : roll) *request.add_roll_call() = std::move(entry);
   const std::string token = absl::StrCat(worker, "-", incarnation, "-", ++ids_);
-  return parsed<v1::EnrolResponse>(call(absl::StrCat("enrol-", ids_), "", deciding<v1::EnrolResponse>([request, token](Turn& turn) {
-    return ledger::enrol(turn, request, token);
-  })));
+  return parsed<v1::EnrolResponse>(
+      call(absl::StrCat("enrol-", ids_), "",
+           deciding<v1::EnrolResponse>([request, token](Turn& turn) { return ledger::enrol(turn, request, token); })));
 }
 
 std::string Bench::session(const std::string& worker, int slots) {
@@ -140,9 +140,9 @@ absl::StatusOr<v1::LeaseResponse> Bench::lease(const std::string& session, int w
   v1::LeaseRequest request;
   request.set_session(session);
   request.set_want(want);
-  return parsed<v1::LeaseResponse>(call(absl::StrCat("lease-", ++ids_), "", deciding<v1::LeaseResponse>([request](Turn& turn) {
-    return ledger::lease(turn, request);
-  })));
+  return parsed<v1::LeaseResponse>(
+      call(absl::StrCat("lease-", ++ids_), "",
+           deciding<v1::LeaseResponse>([request](Turn& turn) { return ledger::lease(turn, request); })));
 }
 
 std::vector<v1::Grant> Bench::grants(const std::string& session, int count) {
@@ -159,44 +159,46 @@ absl::StatusOr<v1::ReportResponse> Bench::report(const std::string& session, con
   v1::ReportRequest request;
   request.set_session(session);
   *request.add_reports() = report;
-  return parsed<v1::ReportResponse>(call(absl::StrCat("report-", ++ids_), "", deciding<v1::ReportResponse>([request](Turn& turn) {
-    return ledger::report(turn, request);
-  })));
+  return parsed<v1::ReportResponse>(
+      call(absl::StrCat("report-", ++ids_), "",
+           deciding<v1::ReportResponse>([request](Turn& turn) { return ledger::report(turn, request); })));
 }
 
-absl::StatusOr<v1::RenewResponse> Bench::renew(const std::string& session, const v1::Grant& grant, v1::RollState state) {
+absl::StatusOr<v1::RenewResponse> Bench::renew(const std::string& session, const v1::Grant& grant,
+                                               v1::RollState state) {
   v1::RenewRequest request;
   request.set_session(session);
   v1::AttemptStatus& status = *request.add_attempts();
   status.set_run(grant.run());
   status.set_fence(grant.fence());
   status.set_state(state);
-  return parsed<v1::RenewResponse>(call("", "", deciding<v1::RenewResponse>([request](Turn& turn) {
-    return ledger::renew(turn, request);
-  })));
+  return parsed<v1::RenewResponse>(
+      call("", "", deciding<v1::RenewResponse>([request](Turn& turn) { return ledger::renew(turn, request); })));
 }
 
 absl::StatusOr<v1::Study> Bench::start(const v1::StudySpec& spec) {
   v1::StartStudyRequest request;
   *request.mutable_spec() = spec;
   return parsed<v1::Study>(call(absl::StrCat("start-", ++ids_), "", deciding<v1::Study>([request](Turn& turn) {
-    return start_study(turn, request, {.fresh_seed = 7, .fingerprint = "machine"});
-  })));
+                                  return start_study(turn, request, {.fresh_seed = 7, .fingerprint = "machine"});
+                                })));
 }
 
-absl::StatusOr<v1::Study> Bench::change(const std::string& name, absl::StatusOr<v1::Study> (*handler)(Turn&, const std::string&)) {
-  return parsed<v1::Study>(call(absl::StrCat("change-", ++ids_), "", deciding<v1::Study>([name, handler](Turn& turn) {
-    return handler(turn, name);
-  })));
+absl::StatusOr<v1::Study> Bench::change(const std::string& name,
+                                        absl::StatusOr<v1::Study> (*handler)(Turn&, const std::string&)) {
+  return parsed<v1::Study>(call(absl::StrCat("change-", ++ids_), "",
+                                deciding<v1::Study>([name, handler](Turn& turn) { return handler(turn, name); })));
 }
 
 std::int64_t Bench::count(const std::string& sql) {
-  auto connection = store::Connection::open(absl::StrCat(folder_, "/", store::kDatabaseFile), store::Connection::Kind::kReader, "");
+  auto connection =
+      store::Connection::open(absl::StrCat(folder_, "/", store::kDatabaseFile), store::Connection::Kind::kReader, "");
   return connection.ok() ? (*connection)->number(sql).value_or(-1) : -1;
 }
 
 std::string Bench::text(const std::string& sql) {
-  auto connection = store::Connection::open(absl::StrCat(folder_, "/", store::kDatabaseFile), store::Connection::Kind::kReader, "");
+  auto connection =
+      store::Connection::open(absl::StrCat(folder_, "/", store::kDatabaseFile), store::Connection::Kind::kReader, "");
   if (!connection.ok()) return {};
   store::Statement row(**connection, sql);
   return row.next() ? row.text(0) : std::string();

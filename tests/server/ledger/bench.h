@@ -1,5 +1,5 @@
-// A ledger with its learners on a folder of its own, under a clock that stands still, and short words for what workers and
-// clients ask of it.
+// A ledger with its learners on a folder of its own, under a clock that stands still, and short words for what workers
+// and clients ask of it.
 #pragma once
 
 #include <atomic>
@@ -29,7 +29,7 @@ class Bench {
   explicit Bench(BenchOptions options = {});
   ~Bench();
 
-  void restart();  // as after a crash: nothing in memory is kept
+  void restart();                   // as after a crash: nothing in memory is kept
   void advance(absl::Duration by);  // the steady clock and the wall clock; returns when the ledger has noticed
   const std::string& folder() const { return folder_; }
   Ledger& ledger() { return *ledger_; }
@@ -38,13 +38,15 @@ class Bench {
   absl::StatusOr<v1::EnrolResponse> enrol(const std::string& worker, int slots, std::vector<v1::RollEntry> roll = {},
                                           std::int64_t incarnation = 1);
   std::string session(const std::string& worker, int slots);  // enrolled; the token
-  absl::StatusOr<v1::LeaseResponse> lease(const std::string& session, int want, absl::Duration wait = absl::ZeroDuration());
+  absl::StatusOr<v1::LeaseResponse> lease(const std::string& session, int want,
+                                          absl::Duration wait = absl::ZeroDuration());
   // Until as many runs were granted; asks again while the study's thread is at work.
   std::vector<v1::Grant> grants(const std::string& session, int count);
   absl::StatusOr<v1::ReportResponse> report(const std::string& session, const v1::AttemptReport& report);
   absl::StatusOr<v1::RenewResponse> renew(const std::string& session, const v1::Grant& grant, v1::RollState state);
   absl::StatusOr<v1::Study> start(const v1::StudySpec& spec);
-  absl::StatusOr<v1::Study> change(const std::string& name, absl::StatusOr<v1::Study> (*handler)(Turn&, const std::string&));
+  absl::StatusOr<v1::Study> change(const std::string& name,
+                                   absl::StatusOr<v1::Study> (*handler)(Turn&, const std::string&));
 
   // The bytes of the answer.
   absl::StatusOr<std::string> call(const std::string& id, const std::string& digest,
@@ -66,8 +68,8 @@ class Bench {
   std::atomic<Learners*> told_ = nullptr;
 };
 
-v1::CodeDefinition test_code();              // "hill": input x, output height, a licence of pool "token"
-v1::StudySpec test_study(std::int64_t runs); // minimises height over x, space-filling
+v1::CodeDefinition test_code();               // "hill": input x, output height, a licence of pool "token"
+v1::StudySpec test_study(std::int64_t runs);  // minimises height over x, space-filling
 v1::AttemptReport evaluated(const v1::Grant& grant, double height);
 v1::AttemptReport failed(const v1::Grant& grant);
 v1::AttemptReport lost(const v1::Grant& grant, v1::LossReason why);

@@ -12,8 +12,12 @@ constexpr int kBudget = 60;
 constexpr int kTokens = 3;
 
 void expect_invariants(Bench& bench) {
-  // N2: a run settles once. N9: open + used <= budget. N10: never more holders than tokens. N4: every run is in one state.
-  EXPECT_EQ(bench.count("SELECT count(*) FROM (SELECT run FROM attempt WHERE state = 'settled' GROUP BY run HAVING count(*) > 1)"), 0);
+  // N2: a run settles once. N9: open + used <= budget. N10: never more holders than tokens. N4: every run is in one
+  // state.
+  EXPECT_EQ(
+      bench.count(
+          "SELECT count(*) FROM (SELECT run FROM attempt WHERE state = 'settled' GROUP BY run HAVING count(*) > 1)"),
+      0);
   EXPECT_LE(bench.count("SELECT count(*) FROM run WHERE life IN ('open', 'set_aside', 'settled')"), kBudget);
   EXPECT_LE(bench.count("SELECT coalesce(sum(n), 0) FROM licence_hold"), kTokens);
   EXPECT_EQ(bench.count("SELECT runs - (SELECT count(*) FROM run) FROM study"), 0);

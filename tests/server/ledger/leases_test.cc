@@ -55,7 +55,8 @@ TEST(Leases, AfterPatienceASecondAttemptIsGrantedAndTheFirstReportSettles) {
   EXPECT_GT(second.fence(), first.fence());
   const auto late = bench.report(w1, evaluated(first, 1.0));
   ASSERT_TRUE(late.ok()) << late.status();
-  EXPECT_EQ(late->receipts(0).reception(), v1::RECEPTION_SETTLED) << "hours of computing are not refused for being late";
+  EXPECT_EQ(late->receipts(0).reception(), v1::RECEPTION_SETTLED)
+      << "hours of computing are not refused for being late";
 }
 
 TEST(Leases, TellTheOtherAttemptToStopOnceTheRunIsSettled) {
@@ -87,7 +88,8 @@ TEST(RollCall, KeepsWhatRunsAfterARestartOfTheCoordinator) {
   const v1::Grant again = bench.grants(enrolled->session(), 1).at(0);
   EXPECT_EQ(again.run(), grants[1].run());
   EXPECT_EQ(again.fence(), grants[1].fence() + 1);
-  EXPECT_EQ(bench.report(enrolled->session(), evaluated(grants[0], 1.0))->receipts(0).reception(), v1::RECEPTION_SETTLED);
+  EXPECT_EQ(bench.report(enrolled->session(), evaluated(grants[0], 1.0))->receipts(0).reception(),
+            v1::RECEPTION_SETTLED);
 }
 
 TEST(RollCall, TakesBackWhatNeverBegan) {
@@ -108,7 +110,8 @@ TEST(RollCall, HoldsRunsOfANewerStoreAndStopsThoseThatAreOver) {
   ASSERT_TRUE(bench.report(w1, evaluated(grant, 1.0)).ok());
   v1::Grant unknown = grant;
   unknown.set_run(1000);
-  const auto enrolled = bench.enrol("w1", 1, {entry(grant, v1::ROLL_STATE_RUNNING), entry(unknown, v1::ROLL_STATE_RUNNING)}, 2);
+  const auto enrolled =
+      bench.enrol("w1", 1, {entry(grant, v1::ROLL_STATE_RUNNING), entry(unknown, v1::ROLL_STATE_RUNNING)}, 2);
   EXPECT_EQ(enrolled->answers(0).order(), v1::ROLL_ORDER_STOP);
   EXPECT_EQ(enrolled->answers(1).order(), v1::ROLL_ORDER_HOLD);
 }

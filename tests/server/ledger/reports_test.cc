@@ -14,7 +14,9 @@ class Reports : public testing::Test {
     ASSERT_TRUE(bench_.start(test_study(2)).ok());
     grant_ = bench_.grants(w1_, 1).at(0);
   }
-  v1::Reception reception(const v1::AttemptReport& report) { return bench_.report(w1_, report)->receipts(0).reception(); }
+  v1::Reception reception(const v1::AttemptReport& report) {
+    return bench_.report(w1_, report)->receipts(0).reception();
+  }
 
   Bench bench_;
   std::string w1_;
@@ -33,7 +35,8 @@ TEST_F(Reports, CarryTheEventAndItsHashInTheirReceipt) {
   const auto answer = bench_.report(w1_, evaluated(grant_, 1.0));
   const v1::Receipt& receipt = answer->receipts(0);
   EXPECT_EQ(receipt.store_id(), "store-1");
-  EXPECT_EQ(receipt.chain_hash(), bench_.text("SELECT hash FROM event WHERE number = " + std::to_string(receipt.event())));
+  EXPECT_EQ(receipt.chain_hash(),
+            bench_.text("SELECT hash FROM event WHERE number = " + std::to_string(receipt.event())));
 }
 
 TEST_F(Reports, OfAFenceThatWasNeverGrantedAreRefused) {

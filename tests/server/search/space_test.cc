@@ -158,7 +158,8 @@ TEST(Space, HasAFingerprintOfEverythingThatItIs) {
 
 TEST(Space, GivesTheBaselineItsOwnNumbers) {
   // 8 on a logarithm from 3 to 30 is no exact coordinate.
-  const auto space = Space::make({{.low = 3.0, .high = 30.0, .scale = Scale::kLog}, {.low = 0.35, .high = 0.8}}, {8.0, 0.5});
+  const auto space =
+      Space::make({{.low = 3.0, .high = 30.0, .scale = Scale::kLog}, {.low = 0.35, .high = 0.8}}, {8.0, 0.5});
   ASSERT_TRUE(space.ok());
   EXPECT_EQ(space->to_user(space->baseline()), (std::vector<double>{8.0, 0.5}));
 }

@@ -120,7 +120,8 @@ absl::Status append(Store& store, const study::Event& event) {
 
 absl::StatusOr<std::unique_ptr<Store>> store_with_study(const std::string& folder) {
   DROVER_ASSIGN(std::unique_ptr<Store> store, Store::open(folder, test_options()));
-  for (const study::Event& event : {code_defined(), session_opened(1), study_started(1)}) DROVER_TRY(append(*store, event));
+  for (const study::Event& event : {code_defined(), session_opened(1), study_started(1)})
+    DROVER_TRY(append(*store, event));
   return store;
 }
 

@@ -22,7 +22,8 @@ TEST(Asking, ByCandidateAsksUpToTheLookAheadWhateverTheSlots) {
 TEST(Asking, NeverExceedsTheBudget) {
   for (std::int64_t used = 0; used <= 20; ++used) {
     for (std::int64_t open = 0; used + open <= 20; ++open) {
-      const Standing standing{.used = used, .open = open, .budget = 20, .runs_per_candidate = 3, .parallel = 64, .slots = 64};
+      const Standing standing{
+          .used = used, .open = open, .budget = 20, .runs_per_candidate = 3, .parallel = 64, .slots = 64};
       EXPECT_LE(used + open + 3 * candidates_wanted(standing), 20);
       EXPECT_EQ(budget_spent(standing), 20 - used - open < 3);
     }
@@ -30,7 +31,8 @@ TEST(Asking, NeverExceedsTheBudget) {
 }
 
 TEST(Asking, StopsWhenTheStudyIsNotActiveOrItsDeadlineHasPassed) {
-  for (const auto state : {v1::STUDY_STATE_PAUSED, v1::STUDY_STATE_FINISHING, v1::STUDY_STATE_STOPPING, v1::STUDY_STATE_FAILED}) {
+  for (const auto state :
+       {v1::STUDY_STATE_PAUSED, v1::STUDY_STATE_FINISHING, v1::STUDY_STATE_STOPPING, v1::STUDY_STATE_FAILED}) {
     EXPECT_EQ(candidates_wanted({.state = state, .parallel = 4}), 0);
   }
   EXPECT_EQ(candidates_wanted({.parallel = 4, .deadline_passed = true}), 0);

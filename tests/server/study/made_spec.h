@@ -11,8 +11,9 @@
 
 namespace drover::study {
 
-v1::CodeDefinition beam_code();  // accepts height (mm), material (wood, steel), load (kN); gives deflection (mm), mass (kg)
-v1::StudySpec beam_study();      // height in cm, material; condition load 2 and 4 kN weighing 3 to 1; minimises cost
+v1::CodeDefinition
+beam_code();                 // accepts height (mm), material (wood, steel), load (kN); gives deflection (mm), mass (kg)
+v1::StudySpec beam_study();  // height in cm, material; condition load 2 and 4 kN weighing 3 to 1; minimises cost
 CheckResult check_beam(const v1::StudySpec& spec);
 std::unique_ptr<StudyPlan> plan_of(const v1::StudySpec& spec);
 RunResult ran(int condition, int replicate, double deflection, double mass);

@@ -37,7 +37,8 @@ TEST(Plan, RoundsToTheStepOnce) {
 TEST(Plan, ScoresMeansOverConditionsByTheirWeights) {
   const auto plan = plan_of(beam_study());
   // cost = 2 mass + load: 2 x 5 + 2 = 12 weighing 3/4, 2 x 5 + 4 = 14 weighing 1/4.
-  const CandidateScore score = plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(1, 0, 5, 5), ran(0, 0, 4, 5)});
+  const CandidateScore score =
+      plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(1, 0, 5, 5), ran(0, 0, 4, 5)});
   EXPECT_EQ(score.verdict(), v1::CANDIDATE_VERDICT_FEASIBLE);
   EXPECT_DOUBLE_EQ(numbers(score.objectives())[0], 12.5);
   EXPECT_DOUBLE_EQ(numbers(score.constraints())[0], 0.5);  // the worst, in cm
@@ -48,14 +49,16 @@ TEST(Plan, TakesTheWorstConditionWhereThatIsAsked) {
   v1::StudySpec spec = beam_study();
   spec.mutable_objectives(0)->set_across(v1::ACROSS_WORST);
   const auto plan = plan_of(spec);
-  const CandidateScore score = plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 5, 5)});
+  const CandidateScore score =
+      plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 5, 5)});
   EXPECT_DOUBLE_EQ(numbers(score.objectives())[0], 14.0);
 }
 
 TEST(Plan, KeepsTheAllowanceBackFromTheLimit) {
   const auto plan = plan_of(beam_study());
   // At most 1 cm with 10 % kept back: 9.5 mm is too much, by 0.05 of the limit's size.
-  const CandidateScore score = plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 9.5, 5)});
+  const CandidateScore score =
+      plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 9.5, 5)});
   EXPECT_EQ(score.verdict(), v1::CANDIDATE_VERDICT_INFEASIBLE);
   EXPECT_NEAR(numbers(score.violation())[0], 0.05, 1e-12);
 }
@@ -65,8 +68,9 @@ TEST(Plan, TakesTheMeanOfReplicates) {
   spec.set_replicates(2);
   const auto plan = plan_of(spec);
   EXPECT_EQ(plan->runs_per_candidate(), 4);
-  const CandidateScore score = plan->score(
-      std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 4), ran(0, 1, 4, 6), ran(1, 0, 5, 4), ran(1, 1, 5, 6)});
+  const CandidateScore score =
+      plan->score(std::vector<double>{2, 0},
+                  std::vector<RunResult>{ran(0, 0, 4, 4), ran(0, 1, 4, 6), ran(1, 0, 5, 4), ran(1, 1, 5, 6)});
   EXPECT_DOUBLE_EQ(numbers(score.objectives())[0], 12.5);
 }
 
@@ -87,7 +91,8 @@ TEST(Plan, FailsACandidateWhoseFormulaGivesNoNumber) {
   v1::StudySpec spec = beam_study();
   spec.mutable_derived(0)->set_formula("1 / (mass - 5)");
   const auto plan = plan_of(spec);
-  const CandidateScore score = plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 5, 5)});
+  const CandidateScore score =
+      plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 5, 5)});
   EXPECT_EQ(score.verdict(), v1::CANDIDATE_VERDICT_FAILED);
   EXPECT_EQ(score.failure(), v1::FAILURE_KIND_CHECK);
 }
@@ -102,7 +107,8 @@ TEST(Plan, MinimisesTheNegativeOfWhatIsMaximisedAndShowsItAsItWas) {
   v1::StudySpec spec = beam_study();
   spec.mutable_objectives(0)->set_sense(v1::SENSE_MAXIMISE);
   const auto plan = plan_of(spec);
-  const CandidateScore score = plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 5, 5)});
+  const CandidateScore score =
+      plan->score(std::vector<double>{2, 0}, std::vector<RunResult>{ran(0, 0, 4, 5), ran(1, 0, 5, 5)});
   EXPECT_DOUBLE_EQ(numbers(score.objectives())[0], -12.5);
   EXPECT_DOUBLE_EQ(plan->shown_objectives(score)[0].number(), 12.5);
   EXPECT_EQ(plan->shown_constraints(score)[0].unit(), "cm");
@@ -117,11 +123,13 @@ TEST(Plan, OrdersScoresByTheFeasibilityRules) {
     return score;
   };
   // Deb (2000): feasible first, by objective; then by violation; then failed.
-  const std::vector<CandidateScore> sorted = {made(v1::CANDIDATE_VERDICT_FEASIBLE, 1, 0), made(v1::CANDIDATE_VERDICT_FEASIBLE, 2, 0),
-                                              made(v1::CANDIDATE_VERDICT_INFEASIBLE, 0, 1), made(v1::CANDIDATE_VERDICT_INFEASIBLE, -9, 2),
-                                              made(v1::CANDIDATE_VERDICT_FAILED, 0, 0), made(v1::CANDIDATE_VERDICT_WITHDRAWN, 0, 0)};
+  const std::vector<CandidateScore> sorted = {
+      made(v1::CANDIDATE_VERDICT_FEASIBLE, 1, 0),   made(v1::CANDIDATE_VERDICT_FEASIBLE, 2, 0),
+      made(v1::CANDIDATE_VERDICT_INFEASIBLE, 0, 1), made(v1::CANDIDATE_VERDICT_INFEASIBLE, -9, 2),
+      made(v1::CANDIDATE_VERDICT_FAILED, 0, 0),     made(v1::CANDIDATE_VERDICT_WITHDRAWN, 0, 0)};
   for (std::size_t i = 0; i < sorted.size(); ++i) {
-    for (std::size_t j = 0; j < sorted.size(); ++j) EXPECT_EQ(StudyPlan::better(sorted[i], sorted[j]), i < j) << i << " " << j;
+    for (std::size_t j = 0; j < sorted.size(); ++j)
+      EXPECT_EQ(StudyPlan::better(sorted[i], sorted[j]), i < j) << i << " " << j;
   }
 }
 

@@ -67,7 +67,8 @@ std::string CodeFolder::work() const {
 void CodeFolder::write(const std::string& name, const std::string& text, bool executable) const {
   std::ofstream(path_ + "/" + name, std::ios::binary) << text;
   using std::filesystem::perms;
-  std::filesystem::permissions(path_ + "/" + name, perms::owner_read | perms::owner_write | (executable ? perms::owner_exec : perms::none));
+  std::filesystem::permissions(path_ + "/" + name,
+                               perms::owner_read | perms::owner_write | (executable ? perms::owner_exec : perms::none));
 }
 
 std::string CodeFolder::read(const std::string& name) const {

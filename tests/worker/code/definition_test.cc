@@ -68,7 +68,8 @@ const Wrong kWrong[] = {
     {"no_span", "\"2h\"", "\"2 weeks\"", "5:14: time_limit = \"2 weeks\" is no span of time"},
     {"wrong_type", "\"hill\"", "7", "2:8: name must be a text"},
     {"missing_program", "hill.sh", "hull.sh", "4:11: program hull.sh is not there"},
-    {"climbing_name", "\"deck.txt\"\nformats", "\"../deck.txt\"\nformats", "20:10: writes = \"../deck.txt\" must be a name inside"},
+    {"climbing_name", "\"deck.txt\"\nformats", "\"../deck.txt\"\nformats",
+     "20:10: writes = \"../deck.txt\" must be a name inside"},
     {"bad_format", "%10.3e", "%s", "21:28: format \"%s\" is not one conversion"},
     {"no_template", "deck.txt.in", "dack.txt.in", "19:12: template dack.txt.in is not in"},
     {"no_reader", "after = \"HEIGHT =\"\n", "", "23:1: output height needs either after"},
@@ -77,7 +78,8 @@ const Wrong kWrong[] = {
     {"malformed", "name = \"x\"", "name = = \"x\"", "10:"},
 };
 
-INSTANTIATE_TEST_SUITE_P(Table, WrongDefinition, testing::ValuesIn(kWrong), [](const auto& row) { return row.param.what; });
+INSTANTIATE_TEST_SUITE_P(Table, WrongDefinition, testing::ValuesIn(kWrong),
+                         [](const auto& row) { return row.param.what; });
 
 TEST(Definition, SaysEverythingThatIsWrongAtOnce) {
   const CodeFolder folder;
@@ -91,7 +93,8 @@ TEST(Definition, SaysEverythingThatIsWrongAtOnce) {
 TEST(Definition, NamesTheMarkThatNoInputHasWithItsPlaceInTheTemplate) {
   const CodeFolder folder;
   folder.write("deck.txt.in", "X [=x=]\nKIND [=kind=]\nY [=knid=]\n");
-  EXPECT_NE(refusal(folder).find("deck.txt.in:3:3: [=knid=]: the code accepts no knid; did you mean kind?"), std::string::npos);
+  EXPECT_NE(refusal(folder).find("deck.txt.in:3:3: [=knid=]: the code accepts no knid; did you mean kind?"),
+            std::string::npos);
 }
 
 TEST(Definition, NamesTheInputThatNoTemplateUses) {
@@ -102,7 +105,8 @@ TEST(Definition, NamesTheInputThatNoTemplateUses) {
 
 TEST(Definition, ThatOthersCanWriteIsRefused) {
   const CodeFolder folder;
-  std::filesystem::permissions(folder.path() + "/code.toml", std::filesystem::perms::others_write, std::filesystem::perm_options::add);
+  std::filesystem::permissions(folder.path() + "/code.toml", std::filesystem::perms::others_write,
+                               std::filesystem::perm_options::add);
   EXPECT_NE(refusal(folder).find("chmod go-w"), std::string::npos);
 }
 

@@ -17,10 +17,10 @@ struct Row {
 
 TEST(Number, IsReadAsCodesWriteIt) {
   // Fortran's forms: ISO/IEC 1539-1, edit descriptors E and D (three-digit exponents lose their letter).
-  const Row rows[] = {{"1.5", 1.5, 3},          {"+2", 2.0, 2},           {".5 m", 0.5, 2},       {"-3.", -3.0, 3},
-                      {"1.0E+03", 1000.0, 7},   {"1.0D+03", 1000.0, 7},   {"1.0d3", 1000.0, 5},   {"1.0-103", 1e-103, 7},
-                      {"1.0+103", 1e103, 7},    {"1-2", 1.0, 1},          {"1e", 1.0, 1},         {"12,5", 12.0, 2},
-                      {"1e400", HUGE_VAL, 5},   {"1e-400", 0.0, 6},       {"-1e400", -HUGE_VAL, 6}};
+  const Row rows[] = {{"1.5", 1.5, 3},        {"+2", 2.0, 2},         {".5 m", 0.5, 2},        {"-3.", -3.0, 3},
+                      {"1.0E+03", 1000.0, 7}, {"1.0D+03", 1000.0, 7}, {"1.0d3", 1000.0, 5},    {"1.0-103", 1e-103, 7},
+                      {"1.0+103", 1e103, 7},  {"1-2", 1.0, 1},        {"1e", 1.0, 1},          {"12,5", 12.0, 2},
+                      {"1e400", HUGE_VAL, 5}, {"1e-400", 0.0, 6},     {"-1e400", -HUGE_VAL, 6}};
   for (const Row& row : rows) {
     const auto read = read_number(row.text);
     ASSERT_TRUE(read.ok()) << row.text;
@@ -35,9 +35,7 @@ TEST(Number, MayBeNoneOrInfinite) {
   EXPECT_EQ(read_number("Infinity")->length, 8u);
 }
 
-TEST(Number, ThatDidNotFitItsFieldIsSaidSo) {
-  EXPECT_TRUE(absl::IsOutOfRange(read_number("*****").status()));
-}
+TEST(Number, ThatDidNotFitItsFieldIsSaidSo) { EXPECT_TRUE(absl::IsOutOfRange(read_number("*****").status())); }
 
 TEST(Number, IsNotSeenWhereThereIsNone) {
   for (const char* const text : {"", " ", "abc", "-", "+", ".", "e5", "--1"}) {

@@ -33,7 +33,8 @@ TEST_F(Reader, TakesTheFirstNumberAfterAText) {
 
 TEST_F(Reader, SaysWhatItFoundInstead) {
   EXPECT_EQ(after("nothing", "POWER").status().message(), "\"POWER\" is not in report.txt");
-  EXPECT_NE(after("POWER one", "POWER", 2).status().message().find("1 times, number 2 is wanted"), absl::string_view::npos);
+  EXPECT_NE(after("POWER one", "POWER", 2).status().message().find("1 times, number 2 is wanted"),
+            absl::string_view::npos);
   EXPECT_NE(after("POWER none\n", "POWER").status().message().find("stands \" none\""), absl::string_view::npos);
   EXPECT_TRUE(absl::IsOutOfRange(after("POWER = *****", "POWER").status()));
   EXPECT_TRUE(absl::IsOutOfRange(after("POWER = NaN", "POWER").status()));

@@ -38,7 +38,8 @@ TEST(Template, KnowsOtherMarks) {
 }
 
 TEST(Template, SaysWhereAMarkIsBroken) {
-  EXPECT_EQ(Template::parse("ok\n  [=x", {}, {}).status().message(), "line 2, column 3: [= without a name and =] after it");
+  EXPECT_EQ(Template::parse("ok\n  [=x", {}, {}).status().message(),
+            "line 2, column 3: [= without a name and =] after it");
   EXPECT_FALSE(Template::parse("[==]", {}, {}).ok());
   EXPECT_FALSE(Template::parse("[=x\n=]", {}, {}).ok());
 }
@@ -59,7 +60,8 @@ TEST(Format, IsOneHarmlessConversion) {
   for (const char* const good : {"%d", "%5d", "%-8.3e", "%+G", "%012.5e", "% .2f"}) {
     EXPECT_TRUE(check_format({.conversion = good}).ok()) << good;
   }
-  for (const char* const bad : {"", "%s", "%n", "%d %d", "x%d", "%*d", "%ld", "%", "%%", "%1000000d", "%.999f", "%hn"}) {
+  for (const char* const bad :
+       {"", "%s", "%n", "%d %d", "x%d", "%*d", "%ld", "%", "%%", "%1000000d", "%.999f", "%hn"}) {
     EXPECT_EQ(check_format({.conversion = bad}).ok(), std::string(bad).empty()) << bad;
   }
 }

@@ -15,7 +15,9 @@ class Verdict : public testing::Test {
     folder_.write("stderr", "complained\n");
     how_.exit_code = 0;
   }
-  v1::AttemptReport judged() { return judge(definition_, how_, folder_.path(), folder_.path() + "/stdout", folder_.path() + "/stderr"); }
+  v1::AttemptReport judged() {
+    return judge(definition_, how_, folder_.path(), folder_.path() + "/stdout", folder_.path() + "/stderr");
+  }
   v1::AttemptReport with_report(const std::string& text) {
     folder_.write("report.txt", text);
     return judged();

@@ -27,9 +27,15 @@ TestAttempt::~TestAttempt() {
 }
 
 Launch TestAttempt::options(const std::string& shell) const {
-  return {.runner = DROVER_BIN "/drover-runner", .folder = folder_, .work = work(), .run = 7, .fence = 2,
-          .command = {"/bin/sh", "-c", shell}, .environment = {"PATH=/usr/bin:/bin", "MARK=yes"},
-          .time_limit = absl::Seconds(20), .grace = absl::Milliseconds(300)};
+  return {.runner = DROVER_BIN "/drover-runner",
+          .folder = folder_,
+          .work = work(),
+          .run = 7,
+          .fence = 2,
+          .command = {"/bin/sh", "-c", shell},
+          .environment = {"PATH=/usr/bin:/bin", "MARK=yes"},
+          .time_limit = absl::Seconds(20),
+          .grace = absl::Milliseconds(300)};
 }
 
 void TestAttempt::start(const Launch& what) {
@@ -46,7 +52,9 @@ Ended TestAttempt::wait() {
   return ended.value_or(Ended{});
 }
 
-std::string TestAttempt::read(const std::string& name) const { return RealFiles().read(folder_ + "/" + name).value_or(""); }
+std::string TestAttempt::read(const std::string& name) const {
+  return RealFiles().read(folder_ + "/" + name).value_or("");
+}
 
 bool TestAttempt::wait_for(const std::string& path) const {
   return eventually([&] { return std::filesystem::exists(path); });

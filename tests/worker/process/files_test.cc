@@ -34,7 +34,8 @@ TEST(Files, SayWhatIsNotThere) {
 TEST(Files, ListNamesInOrder) {
   const TestAttempt folder;
   RealFiles files;
-  for (const char* const name : {"b", "a", "c"}) ASSERT_TRUE(files.make_folder(folder.work() + "/" + name + "/deep").ok());
+  for (const char* const name : {"b", "a", "c"})
+    ASSERT_TRUE(files.make_folder(folder.work() + "/" + name + "/deep").ok());
   EXPECT_EQ(*files.list(folder.work()), (std::vector<std::string>{"a", "b", "c"}));
 }
 

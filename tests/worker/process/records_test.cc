@@ -6,9 +6,11 @@ namespace drover::process {
 namespace {
 
 constexpr std::string_view kBegun =
-    "format 1\nboot_id b\nrun 7\nfence 2\nrunner_pid 10\nrunner_start 100\nchild_pid 11\nchild_start 101\ntime_us 5\nend \n";
+    "format 1\nboot_id b\nrun 7\nfence 2\nrunner_pid 10\nrunner_start 100\nchild_pid 11\nchild_start 101\ntime_us "
+    "5\nend \n";
 constexpr std::string_view kEndedText =
-    "format 1\ncause exited\nexit_code 0\nlaunch_errno 0\nkilled_by_us 0\nunkillable 0\nwall_us 1\nuser_us 2\nsystem_us 3\n"
+    "format 1\ncause exited\nexit_code 0\nlaunch_errno 0\nkilled_by_us 0\nunkillable 0\nwall_us 1\nuser_us "
+    "2\nsystem_us 3\n"
     "peak_memory_bytes 4\nend \n";
 
 TEST(Records, AreReadWhole) {
@@ -23,8 +25,10 @@ TEST(Records, AreReadWhole) {
 }
 
 TEST(Records, ThatWereCutAnywhereAreRefused) {
-  for (std::size_t size = 0; size + 5 < kBegun.size(); ++size) EXPECT_FALSE(parse_begun(kBegun.substr(0, size)).ok()) << size;
-  for (std::size_t size = 0; size + 5 < kEndedText.size(); ++size) EXPECT_FALSE(parse_ended(kEndedText.substr(0, size)).ok()) << size;
+  for (std::size_t size = 0; size + 5 < kBegun.size(); ++size)
+    EXPECT_FALSE(parse_begun(kBegun.substr(0, size)).ok()) << size;
+  for (std::size_t size = 0; size + 5 < kEndedText.size(); ++size)
+    EXPECT_FALSE(parse_ended(kEndedText.substr(0, size)).ok()) << size;
 }
 
 TEST(Records, OfALaterFormatAreRefused) {

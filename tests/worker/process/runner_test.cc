@@ -62,7 +62,9 @@ TEST(Runner, SaysWhyAProgramCouldNotBeStarted) {
 
 TEST(Runner, GivesTheProgramWhatItWasToldAndNothingElse) {
   TestAttempt attempt;
-  attempt.start("env | sort; pwd; readlink /proc/self/fd/0; ls /proc/self/fd | wc -l; for f in /proc/$$/fd/*; do readlink $f; done");
+  attempt.start(
+      "env | sort; pwd; readlink /proc/self/fd/0; ls /proc/self/fd | wc -l; for f in /proc/$$/fd/*; do readlink $f; "
+      "done");
   attempt.wait();
   const std::string out = attempt.read(kStdoutFile);
   EXPECT_NE(out.find("MARK=yes\n"), std::string::npos) << out;
@@ -109,7 +111,8 @@ TEST(Runner, StopsWhenItIsAskedTo) {
 
 TEST(Runner, EndsWhatAProgramLeavesBehindInASessionOfItsOwn) {
   TestAttempt attempt;
-  attempt.start("setsid sh -c 'echo $$ > daemon; trap \"\" TERM; sleep 60' & while [ ! -s daemon ]; do sleep 0.02; done; exit 0");
+  attempt.start(
+      "setsid sh -c 'echo $$ > daemon; trap \"\" TERM; sleep 60' & while [ ! -s daemon ]; do sleep 0.02; done; exit 0");
   const Ended ended = attempt.wait();
   EXPECT_EQ(ended.exit_code, 0);
   std::ifstream file(attempt.work() + "/daemon");
@@ -121,7 +124,8 @@ TEST(Runner, EndsWhatAProgramLeavesBehindInASessionOfItsOwn) {
 
 TEST(Runner, KeepsHeadAndTailOfAFloodWithinItsCapAndItsOwnMemorySmall) {
   TestAttempt attempt;
-  Launch launch = attempt.options("echo the head; head -c 200000000 /dev/zero; sleep 0.5; echo the tail; touch done; sleep 0.5");
+  Launch launch =
+      attempt.options("echo the head; head -c 200000000 /dev/zero; sleep 0.5; echo the tail; touch done; sleep 0.5");
   launch.output_cap_bytes = 1 << 20;
   attempt.start(launch);
   ASSERT_TRUE(attempt.wait_for(attempt.work() + "/done"));
