@@ -167,9 +167,9 @@ absl::Status Ledger::store_answer(const Call& call, const std::string& bytes, Tu
 // decided in it is answered with the same error, and nobody was told otherwise yet.
 void Ledger::undo(Turn& turn, std::vector<Done>& done, const absl::Status& why) {
   if (absl::IsDataLoss(why)) return fatal(why);
-  const bool kept = store_->in_transaction() && turn.first_event() != 0;
-  const bool back = kept && store_->rollback_to().ok() && store_->release().ok();
-  if (!back && store_->in_transaction() && turn.first_event() != 0) store_->rollback();
+  const bool back =
+      turn.saved() && store_->in_transaction() && store_->rollback_to().ok() && store_->release().ok();
+  if (!back) store_->rollback();  // also where SQLite has done so by itself: the chain's head goes back, too
   if (!store_->in_transaction()) {
     for (Done& earlier : done) {
       if (earlier.written) earlier.answer = why;
@@ -221,6 +221,7 @@ void Ledger::finish(std::vector<Done> done) {
       for (Done& one : done) {
         if (one.written) one.answer = committed;
       }
+      store_->rollback();
       touched_.clear();
       disk_ok_ = !absl::IsResourceExhausted(committed);
       reload();

@@ -13,8 +13,9 @@ absl::StatusOr<store::Appended> Turn::emit(std::int64_t study, study::Event even
     if (absl::Status begun = store_.begin(); !begun.ok()) return fail(std::move(begun));
     in_transaction_ = true;
   }
-  if (first_event_ == 0) {
+  if (!saved_) {
     if (absl::Status saved = store_.savepoint(); !saved.ok()) return fail(std::move(saved));
+    saved_ = true;
   }
   event.set_time_us(absl::ToUnixMicros(now_.wall));
   event.set_study(study);

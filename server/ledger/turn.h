@@ -33,7 +33,8 @@ class Turn {
   const Now& now() const { return now_; }
   std::int64_t first_event() const { return first_event_; }   // 0: none yet
   bool in_transaction() const { return in_transaction_; }
-  bool broken() const { return broken_; }                     // an emit failed
+  bool broken() const { return broken_; }  // an emit failed, and may have left half an event in the transaction
+  bool saved() const { return saved_; }    // a savepoint stands before the first event
   const std::set<std::int64_t>& touched() const { return touched_; }  // studies
   // Something happened after which a waiting Lease may find a run.
   bool may_grant() const { return may_grant_; }
@@ -44,6 +45,7 @@ class Turn {
   Now now_;
   bool in_transaction_;
   bool broken_ = false;
+  bool saved_ = false;
   bool may_grant_ = false;
   std::int64_t first_event_ = 0;
   std::set<std::int64_t> touched_;

@@ -48,7 +48,11 @@ class FullDisk(LabTest):
         self.assertEqual(self.lab.settled(), 40)
         store = self.lab.database()
         self.assertEqual(store.execute("SELECT count(*) FROM attempt WHERE state = 'settled'").fetchone()[0], 40)
+        self.assertEqual(store.execute("SELECT count(*) - max(number) FROM event").fetchone()[0], 0)
         store.close()
+        self.lab.kill(self.lab.coordinator)
+        self.lab.start_coordinator()  # which checks the chain of events
+        self.assertEqual(self.lab.settled(), 40)
 
 
 if __name__ == "__main__":

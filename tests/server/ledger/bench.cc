@@ -30,6 +30,7 @@ Bench::~Bench() {
 void Bench::open() {
   store::StoreOptions store_options;
   store_options.fresh_id = "store-1";
+  store_options.most_pages = options_.most_pages;
   absl::StatusOr<std::unique_ptr<store::Store>> store = store::Store::open(folder_, store_options);
   if (!store.ok()) std::abort();
   Options options;
@@ -67,6 +68,11 @@ void Bench::close() {
 void Bench::restart() {
   close();
   open();
+}
+
+void Bench::restart_with_space() {
+  options_.most_pages = 0;
+  restart();
 }
 
 void Bench::advance(absl::Duration by) {

@@ -20,6 +20,7 @@ namespace drover::ledger {
 struct BenchOptions {
   std::map<std::string, std::int32_t> licences;
   bool early_answers = false;  // the planted defect
+  std::int64_t most_pages = 0;  // of the store; 0: no limit
   // Called with the folder and the answered request's id, before the caller hears of the answer.
   std::function<void(const std::string& folder, const std::string& request_id)> at_answer;
 };
@@ -30,6 +31,7 @@ class Bench {
   ~Bench();
 
   void restart();                   // as after a crash: nothing in memory is kept
+  void restart_with_space();        // and the store may grow again
   void advance(absl::Duration by);  // the steady clock and the wall clock; returns when the ledger has noticed
   const std::string& folder() const { return folder_; }
   Ledger& ledger() { return *ledger_; }
