@@ -1,10 +1,13 @@
 // Starting, pausing, resuming and stopping a study, and what its own thread hands in.
 #include <algorithm>
 #include <map>
+#include <memory>
+#include <span>
 #include <utility>
 
 #include "absl/strings/str_cat.h"
 #include "ledger/handlers.h"
+#include "search/methods.h"
 #include "status/try.h"
 #include "study/bytes.h"
 #include "study/cells.h"
@@ -127,6 +130,15 @@ study::StudyStarted started(const v1::StartStudyRequest& request, const study::C
   return started;
 }
 
+// Of the method that will search the study; kept with it, since another revision would ask for other candidates.
+absl::StatusOr<int> method_revision(const study::CheckResult& checked, std::span<const v1::CodeDefinition> codes) {
+  DROVER_ASSIGN(const std::unique_ptr<study::StudyPlan> plan,
+                study::StudyPlan::make(checked.effective, codes, checked.cells));
+  DROVER_ASSIGN(const std::unique_ptr<search::SearchMethod> method,
+                search::make_method(plan->space(), plan->settings()));
+  return method->revision();
+}
+
 study::IssuedAsk issue(const StudyRecord& record, const Asked::One& one, std::int64_t ordinal, std::int64_t& next_run,
                        std::int64_t& next_number) {
   study::IssuedAsk issued;
@@ -180,9 +192,11 @@ absl::StatusOr<v1::Study> start_study(Turn& turn, const v1::StartStudyRequest& r
   const std::vector<v1::CodeDefinition> codes = turn.state().live_codes();
   const study::CheckResult checked = check(turn, request.spec(), settings.fresh_seed, codes);
   if (!checked.problems.empty()) return problems_refusal(checked.problems);
+  DROVER_ASSIGN(const int revision, method_revision(checked, codes));
   const std::int64_t id = turn.state().next_study;
   study::Event event;
   *event.mutable_study_started() = started(request, checked, settings, id);
+  event.mutable_study_started()->set_method_revision(revision);
   DROVER_TRY(turn.emit(id, std::move(event)).status());
   return shown(turn, *turn.state().study(id));
 }

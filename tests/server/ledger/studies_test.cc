@@ -30,6 +30,15 @@ TEST(Studies, RunTheirBudgetAndFinish) {
   EXPECT_EQ(bench.count("SELECT absorbed_through FROM search_state"), 9);
 }
 
+TEST(Studies, AreKeptWithTheirMethodsRevisionSeedAndMachine) {
+  Bench bench;
+  bench.session("w1", 1);
+  ASSERT_TRUE(bench.start(test_study(1)).ok());
+  EXPECT_GE(bench.count("SELECT method_revision FROM study"), 1);
+  EXPECT_EQ(bench.text("SELECT method FROM study"), "space-filling");
+  EXPECT_EQ(bench.text("SELECT fingerprint FROM study"), "machine");
+}
+
 TEST(Studies, GoOnAfterARestart) {
   Bench bench;
   std::string w1 = bench.session("w1", 2);
