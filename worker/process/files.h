@@ -16,7 +16,8 @@ namespace drover::process {
 class Files {
  public:
   virtual ~Files() = default;
-  // After OK the bytes survive a power loss; after an error the old content, if any, is still there.
+  // After OK the bytes survive a power loss; after an error the old content is there, or in rare cases the new one, and
+  // whole in any case.
   virtual absl::Status write_durably(const std::string& path, std::string_view bytes) = 0;
   virtual absl::StatusOr<std::string> read(const std::string& path) const = 0;
   virtual absl::StatusOr<std::vector<std::string>> list(const std::string& folder) const = 0;  // names, sorted

@@ -1,13 +1,19 @@
 #include "process/leftovers.h"
 
+#include <fcntl.h>
 #include <signal.h>
+#include <sys/stat.h>
 #include <sys/syscall.h>
 #include <unistd.h>
 
-#include <algorithm>
 #include <chrono>
+#include <cstdint>
+#include <filesystem>
+#include <fstream>
+#include <optional>
 #include <set>
 #include <thread>
+#include <tuple>
 #include <vector>
 
 #include "absl/strings/str_cat.h"
@@ -25,47 +31,95 @@ using Moment = std::chrono::steady_clock::time_point;
 
 Moment after(absl::Duration span) { return std::chrono::steady_clock::now() + absl::ToChronoMilliseconds(span); }
 
-// Whether the process carries the attempt's mark: a file of its folder stands open in it (stdout, stderr, `alive`).
-// That finds what has left its session and lost its parents, too.
-bool carries(pid_t pid, const std::string& folder) {
-  for (const char* const name : {"1", "2"}) {
-    char target[4096];
-    const std::string link = absl::StrCat("/proc/", pid, "/fd/", name);
-    const ssize_t size = readlink(link.c_str(), target, sizeof(target));
-    if (size > 0 &&
-        std::string_view(target, static_cast<std::size_t>(size)).substr(0, folder.size() + 1) == folder + "/") {
-      return true;
-    }
-  }
-  return false;
-}
+// The files of an attempt's folder that stand open in its processes. Compared by device and number: a path may lead to
+// them in many ways.
+class Marks {
+ public:
+  explicit Marks(const std::string& folder)
+      : stdout_(id_of(absl::StrCat(folder, "/", kStdoutFile))),
+        stderr_(id_of(absl::StrCat(folder, "/", kStderrFile))),
+        alive_(id_of(absl::StrCat(folder, "/", kAliveFile))) {}
 
-// All that is left of the attempt, each by pid and start time.
-std::vector<ProcessIdentity> left(const Begun& begun, const std::string& folder) {
-  const std::vector<ProcessStat> all = all_processes();
-  std::set<pid_t> ours;
-  const bool runner_lives = is_alive(begun.runner), child_lives = is_alive(begun.child);
-  if (runner_lives) ours.insert(begun.runner.pid);
-  if (child_lives) ours.insert(begun.child.pid);
-  std::vector<ProcessIdentity> found;
-  for (bool changed = true; changed;) {
-    changed = false;
-    for (const ProcessStat& process : all) {
-      if (process.state == 'Z' || process.state == 'X' || ours.contains(process.identity.pid)) continue;
-      // Nothing of the attempt is older than its runner.
-      if (process.identity.start < begun.runner.start) continue;
-      const bool of_session = process.session == begun.runner.pid && (runner_lives || child_lives);
-      if (!of_session && !ours.contains(process.parent) && !carries(process.identity.pid, folder)) continue;
-      ours.insert(process.identity.pid);
-      changed = true;
+  // That finds what has left its session and lost its parents, too. Who only reads stdout, or asks about the lock
+  // `alive` without holding it, is a stranger.
+  bool are_on(pid_t pid) const {
+    if (pid == getpid()) return false;
+    const std::string process = absl::StrCat("/proc/", pid);
+    for (const char* const output : {"/fd/1", "/fd/2"}) {
+      const Id id = id_of(process + output);
+      if (id && (id == stdout_ || id == stderr_)) return true;
     }
+    return alive_ && holds_alive(process);
   }
-  for (const ProcessStat& process : all) {
-    const bool alive = process.state != 'Z' && process.state != 'X';
-    if (alive && ours.contains(process.identity.pid)) found.push_back(process.identity);
+
+ private:
+  using Id = std::optional<std::tuple<std::uint32_t, std::uint32_t, std::uint64_t>>;
+  // Asks no file server: one that hangs would hang us with it, for the sake of a stranger's file.
+  static Id id_of(const std::string& path) {
+    struct statx info {};
+    if (statx(AT_FDCWD, path.c_str(), AT_STATX_DONT_SYNC, STATX_INO, &info) != 0) return std::nullopt;
+    return std::tuple(info.stx_dev_major, info.stx_dev_minor, info.stx_ino);
   }
-  return found;
-}
+  bool holds_alive(const std::string& process) const {
+    std::error_code unreadable;  // somebody else's, or gone
+    for (std::filesystem::directory_iterator at(process + "/fd", unreadable), end; at != end;
+         at.increment(unreadable)) {
+      if (id_of(at->path()) != alive_) continue;
+      std::ifstream file(process + "/fdinfo/" + at->path().filename().string());
+      for (std::string line; std::getline(file, line);) {
+        if (line.starts_with("lock:")) return true;
+      }
+    }
+    return false;
+  }
+
+  Id stdout_, stderr_, alive_;
+};
+
+bool runs(const ProcessStat& process) { return process.state != 'Z' && process.state != 'X'; }
+
+// What is left of one attempt, each process by pid and start time.
+class Leftovers {
+ public:
+  Leftovers(const Begun& begun, const std::string& folder) : begun_(begun), marks_(folder) {}
+
+  // All that runs now. Who was found once stays known when what led to it has gone.
+  std::vector<ProcessIdentity> look() {
+    std::vector<ProcessStat> all = all_processes();
+    // Nothing of the attempt is older than its runner.
+    std::erase_if(all, [&](const ProcessStat& p) { return !runs(p) || p.identity.start < begun_.runner.start; });
+    const bool session_is_ours = is_alive(begun_.runner) || is_alive(begun_.child);
+    std::set<pid_t> ours;
+    std::vector<ProcessIdentity> found;
+    const auto add = [&](const ProcessStat& process) {
+      ours.insert(process.identity.pid);
+      found.push_back(process.identity);
+      known_.insert(process.identity);
+    };
+    for (const ProcessStat& process : all) {
+      const bool of_session = session_is_ours && process.session == begun_.runner.pid;
+      if (is_known(process.identity) || of_session || marks_.are_on(process.identity.pid)) add(process);
+    }
+    for (bool changed = true; changed;) {
+      changed = false;
+      for (const ProcessStat& process : all) {
+        if (ours.contains(process.identity.pid) || !ours.contains(process.parent)) continue;
+        add(process);
+        changed = true;
+      }
+    }
+    return found;
+  }
+
+ private:
+  bool is_known(const ProcessIdentity& process) const {
+    return process == begun_.runner || process == begun_.child || known_.contains(process);
+  }
+
+  Begun begun_;
+  Marks marks_;
+  std::set<ProcessIdentity> known_;
+};
 
 // Through a pidfd, so that the signal cannot reach a stranger who got the number meanwhile.
 void send(const ProcessIdentity& process, int signal) {
@@ -86,34 +140,48 @@ bool wait_until(Condition gone, absl::Duration span) {
   return true;
 }
 
-}  // namespace
+// Its runner does this best, and then says how it ended. False: it did not, or could not be told.
+absl::StatusOr<bool> end_by_runner(Files& files, const std::string& folder, const std::string& boot_id,
+                                   absl::Duration grace) {
+  DROVER_ASSIGN(const Survey seen, survey(files, folder, boot_id));
+  if (seen.found != Found::kRunning) return false;
+  if (!files.write_durably(absl::StrCat(folder, "/", kStopFile), "").ok()) return false;
+  return wait_until(
+      [&] {
+        const absl::StatusOr<Survey> now = survey(files, folder, boot_id);
+        return now.ok() && now->found != Found::kRunning;
+      },
+      grace + kMargin);
+}
 
-absl::Status end_leftovers(Files& files, const std::string& folder, const std::string& boot_id, absl::Duration grace) {
-  DROVER_ASSIGN(Survey seen, survey(files, folder, boot_id));
-  if (seen.found == Found::kRunning) {
-    // Its runner does this best, and then says how it ended. Without a `stop` on disk it could not know.
-    DROVER_TRY(files.write_durably(absl::StrCat(folder, "/", kStopFile), ""));
-    wait_until(
-        [&] {
-          const absl::StatusOr<Survey> now = survey(files, folder, boot_id);
-          return now.ok() && now->found != Found::kRunning;
-        },
-        grace + kMargin);
-    DROVER_ASSIGN(seen, survey(files, folder, boot_id));
-  }
-  if (!seen.begun || seen.begun->boot_id != boot_id) return absl::OkStatus();
-  const auto none_left = [&] { return left(*seen.begun, folder).empty(); };
-  if (none_left()) return absl::OkStatus();
-  for (const ProcessIdentity& process : left(*seen.begun, folder)) send(process, SIGTERM);
+absl::Status end_by_signals(const Begun& begun, const std::string& folder, absl::Duration grace) {
+  Leftovers leftovers(begun, folder);
+  const auto none_left = [&] { return leftovers.look().empty(); };
+  const std::vector<ProcessIdentity> first = leftovers.look();
+  if (first.empty()) return absl::OkStatus();
+  // A runner that lives would take the end we bring about for the simulation's own.
+  send(begun.runner, SIGKILL);
+  for (const ProcessIdentity& process : first) send(process, SIGTERM);
+  for (const ProcessIdentity& process : first) send(process, SIGCONT);  // a stopped one would not hear it
   if (wait_until(none_left, grace)) return absl::OkStatus();
   const bool ended = wait_until(
       [&] {
-        for (const ProcessIdentity& process : left(*seen.begun, folder)) send(process, SIGKILL);
+        for (const ProcessIdentity& process : leftovers.look()) send(process, SIGKILL);
         return none_left();
       },
       kMargin);
   if (ended) return absl::OkStatus();
   return absl::UnavailableError(absl::StrCat("processes of ", folder, " cannot be ended, not even by SIGKILL"));
+}
+
+}  // namespace
+
+absl::Status end_leftovers(Files& files, const std::string& folder, const std::string& boot_id, absl::Duration grace) {
+  DROVER_TRY(end_by_runner(files, folder, boot_id, grace).status());
+  DROVER_ASSIGN(const Survey seen, survey(files, folder, boot_id));
+  if (seen.begun && seen.begun->boot_id == boot_id) return end_by_signals(*seen.begun, folder, grace);
+  if (seen.found != Found::kRunning) return absl::OkStatus();
+  return absl::UnavailableError(absl::StrCat("the runner of ", folder, " has not said yet what it runs"));
 }
 
 }  // namespace drover::process

@@ -28,7 +28,7 @@ struct Survey {
   std::optional<Ended> ended;
 };
 
-// Errors: a file that cannot be read or parsed, with its name.
+// Errors: a file that cannot be read, asked for its lock or parsed, with its name; never a guess.
 absl::StatusOr<Survey> survey(const Files& files, const std::string& folder, const std::string& boot_id);
 
 }  // namespace drover::process

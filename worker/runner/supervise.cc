@@ -104,6 +104,11 @@ bool open_all(Attempt& attempt) {
   if (attempt.folder < 0) return fail(attempt.order.folder);
   const int watch = openat(attempt.folder, "watch", O_RDWR | O_CREAT | O_CLOEXEC | O_NOFOLLOW, 0600);
   if (watch < 0 || !lock(watch)) return fail("watch");
+  // Whatever became of the one that began it: an attempt begins once.
+  if (faccessat(attempt.folder, "begun", F_OK, AT_SYMLINK_NOFOLLOW) == 0) {
+    errno = EEXIST;
+    return fail("begun");
+  }
   attempt.alive = openat(attempt.folder, "alive", O_RDWR | O_CREAT | O_NOFOLLOW, 0600);
   if (attempt.alive < 0 || !lock(attempt.alive)) return fail("alive");
   const char* const names[] = {"stdout", "stderr"};
@@ -167,10 +172,11 @@ bool start(Attempt& attempt) {
     return fail("begun");
   }
   attempt.began_ms = now_ms();
-  const bool opened = write(attempt.gate[1], "!", 1) == 1;
+  // Nobody reads it when somebody killed the child meanwhile: that end is recorded like any other.
+  while (write(attempt.gate[1], "!", 1) < 0 && errno == EINTR) {
+  }
   close(attempt.gate[1]);
   close(attempt.alive);  // held by the program and all it starts
-  if (!opened) return fail("gate");
   int trouble = 0;
   if (read(attempt.trouble[0], &trouble, sizeof(trouble)) == sizeof(trouble)) {
     attempt.cause = Cause::kLaunchFailed;
@@ -226,12 +232,13 @@ void wait_for_end(Attempt& attempt) {
   while (reap(attempt) && !attempt.unkillable) {
     if (attempt.main_gone && main_gone_ms == 0) main_gone_ms = now_ms();
     const bool running = !attempt.main_gone && attempt.cause == Cause::kExited;
-    if (running && faccessat(attempt.folder, "stop", F_OK, 0) == 0) attempt.cause = Cause::kStopped;
+    const bool stop = faccessat(attempt.folder, "stop", F_OK, 0) == 0;
+    if (running && stop) attempt.cause = Cause::kStopped;
     const bool over = now_ms() - attempt.began_ms > attempt.order.time_limit_ms;
     if (running && attempt.cause == Cause::kExited && over) attempt.cause = Cause::kLimit;
     // What the program left behind may come to its end by itself, for as long as the grace.
     const bool lingers = attempt.main_gone && now_ms() - main_gone_ms > attempt.order.grace_ms;
-    if (attempt.cause != Cause::kExited || lingers) ending.begin(attempt.order.grace_ms);
+    if (attempt.cause != Cause::kExited || lingers || stop) ending.begin(attempt.order.grace_ms);
     ending.go_on(attempt);
     for (OutputCap& cap : caps) cap.check();
     const timespec look{0, kLookEveryMs * 1'000'000};
@@ -245,10 +252,10 @@ long long microseconds(const timeval& time) { return time.tv_sec * 1'000'000LL +
 void write_ended(const Attempt& attempt) {
   Record record;
   record.add("cause", word(attempt.cause));
-  if (attempt.cause != Cause::kLaunchFailed && WIFEXITED(attempt.status)) {
-    record.add("exit_code", WEXITSTATUS(attempt.status));
-  }
-  if (WIFSIGNALED(attempt.status)) record.add("signal", WTERMSIG(attempt.status));
+  // Neither for a main process that not even SIGKILL ended.
+  const bool known = attempt.main_gone && attempt.cause != Cause::kLaunchFailed;
+  if (known && WIFEXITED(attempt.status)) record.add("exit_code", WEXITSTATUS(attempt.status));
+  if (known && WIFSIGNALED(attempt.status)) record.add("signal", WTERMSIG(attempt.status));
   record.add("launch_errno", attempt.launch_errno);
   record.add("killed_by_us", attempt.killed_by_us ? 1LL : 0LL);
   record.add("unkillable", attempt.unkillable ? 1LL : 0LL);
