@@ -39,8 +39,8 @@ absl::StatusOr<bool> is_locked(const std::string& path) {
 
 // The record under `path`, where there is one.
 template <class Record>
-absl::Status read_record(const Files& files, const std::string& path,
-                         absl::StatusOr<Record> (*parse)(std::string_view), std::optional<Record>& record) {
+absl::Status read_record(const Files& files, const std::string& path, absl::StatusOr<Record> (*parse)(std::string_view),
+                         std::optional<Record>& record) {
   const absl::StatusOr<std::string> text = files.read(path);
   if (absl::IsNotFound(text.status())) return absl::OkStatus();
   DROVER_TRY(text.status());

@@ -1,4 +1,4 @@
-// What a daemon finds of attempts that it did not see end, and how it ends them.
+// What a daemon finds of attempts, and how it learns that one has ended.
 #include "process/launch.h"
 
 #include <gtest/gtest.h>
@@ -6,14 +6,15 @@
 #include <sys/wait.h>
 #include <unistd.h>
 
+#include <algorithm>
 #include <atomic>
 #include <fstream>
 #include <memory>
 #include <vector>
 
-#include "process/leftovers.h"
 #include "process/watcher.h"
 #include "worker/process/attempt.h"
+#include "worker/process/disturbed_files.h"
 
 namespace drover::process {
 namespace {
@@ -53,30 +54,36 @@ TEST(Survey, TellsARebootFromARestart) {
   EXPECT_EQ(seen->found, Found::kRebooted);
 }
 
-TEST(Leftovers, AreEndedThroughTheirRunnerWhichRecordsTheEnd) {
+// Between the look for the record and the look at the lock, the runner writes the record and goes.
+TEST(Survey, SeesAnEndThatComesWhileItLooks) {
   TestAttempt attempt;
-  attempt.start("sleep 60");
+  attempt.start("while [ ! -e go ]; do sleep 0.02; done; exit 5");
   ASSERT_TRUE(attempt.wait_for(attempt.folder() + "/begun"));
-  RealFiles files;
-  ASSERT_TRUE(end_leftovers(files, attempt.folder(), boot_id(), absl::Milliseconds(300)).ok());
-  EXPECT_EQ(attempt.wait().cause, Ended::Cause::kStopped);
+  DisturbedFiles files;
+  files.after_read = [&](const std::string& path) {
+    if (!path.ends_with("/ended")) return;
+    std::ofstream(attempt.work() + "/go");
+    attempt.wait();
+  };
+  const auto seen = survey(files, attempt.folder(), boot_id());
+  ASSERT_TRUE(seen.ok()) << seen.status();
+  ASSERT_EQ(seen->found, Found::kEnded);
+  EXPECT_EQ(seen->ended->exit_code, 5);
 }
 
-TEST(Leftovers, OfAKilledRunnerAreEndedByTheirIdentity) {
+// A lock that cannot be asked (here: a link in its place) must not pass for a free one, nor its run for lost.
+TEST(Survey, SaysWhenItCannotKnow) {
   TestAttempt attempt;
-  attempt.start("trap '' TERM; setsid sleep 60 & touch up; while :; do sleep 1; done");
-  ASSERT_TRUE(attempt.wait_for(attempt.work() + "/up"));
-  kill(attempt.runner(), SIGKILL);
-  ASSERT_TRUE(eventually([&] { return attempt.found() == Found::kUnwatched; }));
-  RealFiles files;
-  ASSERT_TRUE(end_leftovers(files, attempt.folder(), boot_id(), absl::Milliseconds(300)).ok());
-  EXPECT_EQ(attempt.found(), Found::kUnknown);
-}
-
-TEST(Leftovers, OfNothingAreNothing) {
-  TestAttempt attempt;
-  RealFiles files;
-  EXPECT_TRUE(end_leftovers(files, attempt.folder(), boot_id(), absl::Milliseconds(300)).ok());
+  attempt.start("exit 0");
+  attempt.wait();
+  unlink((attempt.folder() + "/ended").c_str());
+  const std::string watch = attempt.folder() + "/watch";
+  unlink(watch.c_str());
+  ASSERT_EQ(symlink("/dev/null", watch.c_str()), 0);
+  const auto seen = survey(RealFiles(), attempt.folder(), boot_id());
+  ASSERT_TRUE(absl::IsUnavailable(seen.status()));
+  EXPECT_NE(seen.status().message().find(watch), std::string::npos) << seen.status();
+  unlink(watch.c_str());
 }
 
 TEST(Launch, OutlivesWhoLaunchedIt) {
