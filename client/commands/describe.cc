@@ -170,6 +170,7 @@ std::string describe(const v1::Candidate& candidate, const v1::StudySpec& spec,
     absl::StrAppend(&text, "  today's design is ", word(baseline->verdict()), baseline->reason().empty() ? "" : ": ",
                     link::printable(baseline->reason()), "\n");
   }
+  if (candidate.number() == 1 && has_baseline(spec)) absl::StrAppend(&text, "  this is today's design\n");
   return absl::StrCat(text, cells_text(candidate));
 }
 

@@ -59,6 +59,7 @@ Exit SoloRun::run() {
   interruption_.expect();
   const auto folder = DataFolder::open(options_.data);
   if (!folder.ok()) return gone(folder.status());
+  output_.say(absl::StrCat("starting a coordinator and a worker in ", (*folder)->path()));
   const auto site =
       PrivateSite::start({.programs = context_.surroundings.programs, .codes = options_.codes, .slots = options_.slots},
                          **folder, context_.surroundings.clock, interruption_, output_);

@@ -66,6 +66,7 @@ TEST_F(SoloWithAFake, StartsAStudyAndLeavesItsResults) {
   const Answer answer = solo();
   EXPECT_EQ(answer.exit, 0) << answer.messages;
   EXPECT_EQ(fake_.studies.started().size(), 1u);
+  EXPECT_THAT(answer.messages, testing::StartsWith("starting a coordinator and a worker in "));
   EXPECT_THAT(answer.messages, HasSubstr("study s started"));
   EXPECT_THAT(answer.data, HasSubstr("study s is finished: the budget is spent\n"));
   EXPECT_THAT(answer.data, HasSubstr("best design: candidate 2 (feasible)\n"));
