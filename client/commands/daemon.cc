@@ -13,7 +13,7 @@ namespace drover::commands {
 namespace {
 
 constexpr int kWrongInput = 2;       // exit code of all our programs
-constexpr int kMostWrongInputs = 2;  // repetition seldom cures it, but a predecessor may still have been ending
+constexpr int kMostWrongInputs = 3;  // repetition seldom cures it, but a predecessor may still have been ending
 
 }  // namespace
 

@@ -26,7 +26,7 @@ class Daemon {
   Daemon& operator=(const Daemon&) = delete;
 
   // Starts it when it does not run and its wait is over. ABORTED, with the tail of its log, when it will not run: it
-  // ended quickly five times in a row, or twice with exit code 2 (wrong usage or input). Call it often.
+  // ended quickly five times in a row, or three times with exit code 2 (wrong usage or input). Call it often.
   absl::Status tend(absl::Duration now);
 
   // What happened since the last call, for people; empty: nothing.

@@ -6,13 +6,15 @@
 #include <system_error>
 
 #include "absl/strings/str_cat.h"
+#include "commands/predecessors.h"
 #include "link/identity.h"
 #include "status/try.h"
 
 namespace drover::commands {
 namespace {
 
-constexpr absl::Duration kPatience = absl::Minutes(2);  // with daemons that are tended meanwhile
+constexpr absl::Duration kPredecessors = absl::Seconds(60);  // to end after their owner was killed
+constexpr absl::Duration kPatience = absl::Minutes(2);       // with daemons that are tended meanwhile
 
 ProgramCall coordinator_call(const SiteOptions& options, const DataFolder& folder, const std::string& address) {
   return {.program = options.programs + "/drover-coordinator",
@@ -47,6 +49,7 @@ absl::Status check_there(const SiteOptions& options) {
 PrivateSite::PrivateSite(const SiteOptions& options, const DataFolder& folder, const link::Clock& clock,
                          const Interruption& interruption, Output& output)
     : address_(folder.socket_address()),
+      record_(folder.file("daemons")),
       coordinator_daemon_("the coordinator", coordinator_call(options, folder, address_), link::random_number()),
       worker_daemon_("the worker", worker_call(options, folder, address_), link::random_number()),
       clock_(clock),
@@ -63,6 +66,10 @@ absl::StatusOr<std::unique_ptr<PrivateSite>> PrivateSite::start(const SiteOption
   std::unique_ptr<PrivateSite> site(new PrivateSite(whole, folder, clock, interruption, output));
   DROVER_ASSIGN(site->coordinator_, Coordinator::at(site->address_, clock, interruption, kPatience,
                                                     [raw = site.get()] { return raw->tend(); }));
+  if (!recorded_daemons(site->record_).empty()) {
+    output.say("an earlier drover was killed here; waiting for its daemons to end");
+    await_predecessors(site->record_, clock, interruption, kPredecessors);
+  }
   DROVER_TRY(site->tend());
   return site;
 }
@@ -74,7 +81,10 @@ absl::Status PrivateSite::tend() {
     DROVER_TRY(status);
     if (!news.empty()) tell_(news);
   }
-  return absl::OkStatus();
+  const std::vector<pid_t> daemons = {coordinator_daemon_.pid(), worker_daemon_.pid()};
+  if (daemons == recorded_) return absl::OkStatus();
+  recorded_ = daemons;
+  return record_daemons(record_, daemons);
 }
 
 absl::Status PrivateSite::wait_for_worker() {

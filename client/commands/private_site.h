@@ -1,10 +1,13 @@
 // A coordinator and a worker for one user on one machine: the same programs, started and kept running by this one.
 #pragma once
 
+#include <sys/types.h>
+
 #include <functional>
 #include <memory>
 #include <string>
 #include <utility>
+#include <vector>
 
 #include "absl/status/statusor.h"
 #include "commands/coordinator.h"
@@ -53,6 +56,8 @@ class PrivateSite {
               const Interruption& interruption, Output& output);
 
   std::string address_;
+  std::string record_;           // file of the daemons' process ids, for a successor
+  std::vector<pid_t> recorded_;  // what it holds
   Daemon coordinator_daemon_, worker_daemon_;
   const link::Clock& clock_;
   const Interruption& interruption_;

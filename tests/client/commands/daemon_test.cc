@@ -88,7 +88,7 @@ TEST(Daemon, IsGivenUpSoonWhenItsInputIsWrong) {
                 daemon, [] { return false; }, &now)
                 .code(),
             absl::StatusCode::kAborted);
-  EXPECT_EQ(read_file(folder.file("log")), "wrong\nwrong\n");
+  EXPECT_EQ(read_file(folder.file("log")), "wrong\nwrong\nwrong\n");
 }
 
 TEST(Daemon, ThatIsMissingCannotBeStarted) {

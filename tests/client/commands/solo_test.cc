@@ -158,7 +158,7 @@ TEST(Solo, ShowsTheLogOfADaemonThatDoesNotRun) {
   const std::string script = "#!/bin/sh\necho \"$0 cannot\"\nexit 2\n";
   const Answer answer = drover({"solo", folder.write("s.toml", kFile)}, "", programs_in(programs, script));
   EXPECT_EQ(answer.exit, 1);
-  EXPECT_THAT(answer.messages, HasSubstr("does not run: it ended with exit code 2, 2 times in a row; its log "));
+  EXPECT_THAT(answer.messages, HasSubstr("does not run: it ended with exit code 2, 3 times in a row; its log "));
   EXPECT_THAT(answer.messages, testing::ContainsRegex("drover-(coordinator|worker) cannot"));
 }
 
